@@ -1,0 +1,1 @@
+"""byway.knowledge: graph, geometry, damage, capacity, accounts and cases. Never imports byway.widgets."""

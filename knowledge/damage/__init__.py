@@ -1,0 +1,1 @@
+"""Damage of every element by a lesion, with its uncertainty: shares, clearance, ensemble, coverage."""

@@ -1,0 +1,1 @@
+"""The lesion: compartments, shapes, effect map, morphology and image files."""

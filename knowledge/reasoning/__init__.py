@@ -1,0 +1,1 @@
+"""From damage to accounts: capacity, signs, scenarios, posterior, attribution, next tests."""
