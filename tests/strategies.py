@@ -1,0 +1,1 @@
+"""Hypothesis strategies shared by the tests."""
