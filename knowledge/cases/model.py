@@ -1,0 +1,148 @@
+"""What case.yaml holds: typed, frozen values; the JSON Schema beside this file is made from them.
+
+Coordinates are MNI mm in the template's space; volumes named by ``file`` lie beside case.yaml in the case folder.
+"""
+
+from __future__ import annotations
+
+from typing import Annotated, Any, Literal
+
+from pydantic import BaseModel, ConfigDict, Field, model_validator
+
+__all__ = [
+    "SCHEMA_VERSION",
+    "Asymmetry",
+    "CaseFile",
+    "CompartmentSpec",
+    "FindingSpec",
+    "LesionSpec",
+    "PersonSpec",
+    "ScanSpec",
+    "ShapeSpec",
+    "case_schema",
+]
+
+SCHEMA_VERSION = 1
+
+Point = tuple[float, float, float]
+Share = Annotated[float, Field(ge=0.0, le=1.0)]
+Millimetre = Annotated[float, Field(ge=0.0, le=100.0)]
+
+
+class _Block(BaseModel):
+    model_config = ConfigDict(frozen=True, extra="forbid")
+
+
+class PersonSpec(_Block):
+    """The person, as little as the reasoning needs; never a name."""
+
+    handedness: Literal["right", "left", "ambidextrous", "unknown"] = "unknown"
+    age_band: Annotated[str, Field(pattern=r"^\d{1,3}-\d{1,3}$|^\d{2,3}\+$|^unknown$")] = "unknown"
+    pseudonym: Annotated[str, Field(max_length=60)] | None = None
+
+
+class ShapeSpec(_Block):
+    """A sphere or an axis-aligned ellipsoid; ``radii_mm`` are the half-axes along x, y, z."""
+
+    shape: Literal["sphere", "ellipsoid"]
+    centre_mm: Point
+    radii_mm: tuple[Annotated[float, Field(gt=0, le=100)], ...]
+
+    @model_validator(mode="after")
+    def _radii(self) -> ShapeSpec:
+        wanted = (1, 3) if self.shape == "sphere" else (3,)
+        if len(self.radii_mm) not in wanted:
+            raise ValueError(f"a {self.shape} takes {' or '.join(map(str, wanted))} radii, not {len(self.radii_mm)}")
+        if self.shape == "sphere" and len(set(self.radii_mm)) != 1:
+            raise ValueError("a sphere's radii are equal; use shape: ellipsoid")
+        return self
+
+
+class CompartmentSpec(_Block):
+    """A labelled part of the lesion, from a volume or from shapes, with its effect between 0 and 1."""
+
+    name: Annotated[str, Field(min_length=1, max_length=60)]
+    kind: Literal["core", "oedema", "other"]
+    effect: Share
+    file: str | None = None
+    label: int | None = None
+    shapes: tuple[ShapeSpec, ...] = ()
+
+    @model_validator(mode="after")
+    def _one_origin(self) -> CompartmentSpec:
+        if (self.file is None) == (not self.shapes):
+            raise ValueError("a compartment takes either `file` or `shapes`")
+        return self
+
+
+class LesionSpec(_Block):
+    """The lesion: compartments, a graded effect map, or both."""
+
+    drawn_on: Literal["dwi", "flair", "t1", "t2", "t1_contrast", "ct", "swi", "perfusion", "unknown"] = "unknown"
+    boundary_mm: Millimetre | None = None
+    compartments: tuple[CompartmentSpec, ...] = ()
+    effect_map: str | None = None
+
+
+class FindingSpec(_Block):
+    """One observation. ``sign`` is a sign key or an HPO id; ``side`` is the side of the body or of the field."""
+
+    sign: str
+    side: Literal["left", "right", "none"] = "none"
+    grade: Literal["absent", "mild", "moderate", "severe"]
+    test: str | None = None
+    date: str | None = None
+    by: str | None = None
+
+
+class Asymmetry(_Block):
+    """A measured asymmetry of a segment: (right - left) / (right + left), between -1 and 1."""
+
+    segment: str
+    index: Annotated[float, Field(ge=-1.0, le=1.0)]
+    measure: str = "volume"
+    note: str | None = None
+
+
+class ScanSpec(_Block):
+    """A scan shown behind the lesion, already in template space."""
+
+    name: str
+    file: str
+    sequence: str = "unknown"
+
+
+class CaseFile(_Block):
+    """case.yaml, whole."""
+
+    schema_version: Literal[1] = 1
+    title: Annotated[str, Field(max_length=200)] | None = None
+    invented: bool = False
+    person: PersonSpec = PersonSpec()
+    stage: Literal["acute", "subacute", "chronic"]
+    cause: Literal[
+        "infarct",
+        "haemorrhage",
+        "tumour",
+        "low_grade_tumour",
+        "trauma",
+        "surgery",
+        "inflammation",
+        "degeneration",
+        "other",
+        "unknown",
+    ] = "unknown"
+    lesion: LesionSpec = LesionSpec()
+    scans: tuple[ScanSpec, ...] = ()
+    findings: tuple[FindingSpec, ...] = ()
+    asymmetries: tuple[Asymmetry, ...] = ()
+    overlays: tuple[str, ...] = ()
+    priors: dict[str, float | dict[str, float]] = {}
+
+
+def case_schema() -> dict[str, Any]:
+    """The JSON Schema of case.yaml, made from :class:`CaseFile`."""
+    schema = CaseFile.model_json_schema()
+    schema["$schema"] = "https://json-schema.org/draft/2020-12/schema"
+    schema["title"] = "byway case"
+    return schema
