@@ -13,6 +13,8 @@ ROOT = Path(__file__).resolve().parents[1]
 # From left to right. A module may import modules of its own room and of the rooms before it.
 ROOMS = (
     "byway.knowledge.faults",
+    "byway.knowledge.yamltext",
+    "byway.knowledge.words",
     "byway.knowledge.curated",
     "byway.knowledge.graph",
     "byway.knowledge.space",

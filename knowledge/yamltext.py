@@ -1,0 +1,145 @@
+"""YAML text read safely, with the line of every value, so that a fault can say where it stands.
+
+Only plain mappings, lists and scalars are taken: tags, anchors and repeated keys are refused, and so is a file that
+is too large to be text somebody reviewed.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any, TypeVar
+
+import yaml
+from pydantic import BaseModel, ValidationError
+
+from byway.knowledge.faults import BywayError, Fault
+
+__all__ = ["Lined", "parse_yaml", "read_yaml", "validate"]
+
+MOST_BYTES = 5_000_000
+Loader: Any = getattr(yaml, "CSafeLoader", yaml.SafeLoader)
+
+
+@dataclass(frozen=True)
+class Lined:
+    """A value read from YAML, and the line (from 1) of every place in it.
+
+    Parameters
+    ----------
+    value : object
+        Plain dicts, lists, strings, numbers, booleans, None.
+    lines : dict
+        Line of each place; a place is a tuple of keys and list positions, ``()`` is the whole text.
+    name : str
+        What to call the text in a fault.
+    """
+
+    value: Any
+    lines: dict[tuple[Any, ...], int]
+    name: str
+
+    def where(self, place: tuple[Any, ...]) -> str:
+        """``file:line key`` of a place, or of its nearest parent that has a line."""
+        known = place
+        while known not in self.lines and known:
+            known = known[:-1]
+        key = ".".join(map(str, place))
+        return f"{self.name}:{self.lines.get(known, 1)}" + (f" {key}" if key else "")
+
+
+def parse_yaml(text: str, name: str, error: type[BywayError] = BywayError) -> Lined:
+    """Read YAML text.
+
+    Raises
+    ------
+    BywayError
+        (or ``error``) with line: not YAML, a tag, an anchor, or a key that stands twice.
+    """
+    loader = Loader(text)
+    try:
+        node = loader.get_single_node()
+        if node is None:
+            return Lined(None, {(): 1}, name)
+        lines: dict[tuple[Any, ...], int] = {}
+        if "&" in text or "!" in text:
+            _refuse_marks(loader, text, name, error)
+        return Lined(_value(loader, node, (), lines, name, error), lines, name)
+    except yaml.YAMLError as fault:
+        mark = getattr(fault, "problem_mark", None) or getattr(fault, "context_mark", None)
+        line = mark.line + 1 if mark is not None else 1
+        problem = str(getattr(fault, "problem", None) or fault).splitlines()[0]
+        raise error(Fault("yaml", f"{name}:{line}", problem, "plain YAML", "mend that line")) from fault
+    except (ValueError, RecursionError) as fault:
+        raise error(Fault("yaml", name, str(fault).splitlines()[0], "plain YAML", "mend the value")) from fault
+    finally:
+        loader.dispose()
+
+
+def read_yaml(path: Path, error: type[BywayError] = BywayError, name: str | None = None) -> Lined:
+    """Read a YAML file; see :func:`parse_yaml`. A missing, unreadable or oversized file raises ``error`` too."""
+    called = name or path.name
+    try:
+        size = path.stat().st_size
+        if size > MOST_BYTES:
+            raise error(Fault("too-large", called, f"{size:,} bytes", f"at most {MOST_BYTES:,}", "split the file"))
+        text = path.read_text("utf-8")
+    except UnicodeDecodeError as fault:
+        raise error(Fault("encoding", called, f"bytes that are not UTF-8 at {fault.start}", "UTF-8 text")) from fault
+    except OSError as fault:
+        raise error(Fault("unreadable", str(path), str(fault.strerror), "a readable file", "check the path")) from fault
+    return parse_yaml(text, called, error)
+
+
+def _refuse_marks(loader: Any, text: str, name: str, error: type[BywayError]) -> None:
+    for event in yaml.parse(text, Loader=type(loader)):
+        anchor = getattr(event, "anchor", None)
+        tag = getattr(event, "tag", None)
+        if anchor or tag:
+            found = f"an anchor or alias ({anchor})" if anchor else f"a tag ({tag})"
+            where = f"{name}:{event.start_mark.line + 1}"
+            raise error(Fault("yaml-mark", where, found, "plain values", "write the value out"))
+
+
+def _value(
+    loader: Any, node: Any, place: tuple[Any, ...], lines: dict[tuple[Any, ...], int], name: str, error: type[BywayError]
+) -> Any:
+    lines[place] = node.start_mark.line + 1
+    if isinstance(node, yaml.MappingNode):
+        mapping: dict[Any, Any] = {}
+        for key_node, value_node in node.value:
+            if not isinstance(key_node, yaml.ScalarNode):
+                where = f"{name}:{key_node.start_mark.line + 1}"
+                raise error(Fault("yaml-key", where, "a key that is no plain word", "a plain key"))
+            key = loader.construct_object(key_node)
+            if key in mapping:
+                where = f"{name}:{key_node.start_mark.line + 1} {key}"
+                raise error(Fault("duplicate", where, "a key that stands twice", "each key once", "remove one"))
+            mapping[key] = _value(loader, value_node, (*place, key), lines, name, error)
+            lines[(*place, key)] = key_node.start_mark.line + 1
+        return mapping
+    if isinstance(node, yaml.SequenceNode):
+        return [_value(loader, item, (*place, i), lines, name, error) for i, item in enumerate(node.value)]
+    return loader.construct_object(node)
+
+
+Model = TypeVar("Model", bound=BaseModel)
+
+
+def validate(model: type[Model], read: Lined, error: type[BywayError] = BywayError) -> Model:
+    """Make a pydantic record of what was read; each of its errors becomes a fault with its line.
+
+    Raises
+    ------
+    BywayError
+        (or ``error``) holding every fault.
+    """
+    try:
+        return model.model_validate(read.value if read.value is not None else {})
+    except ValidationError as problem:
+        faults = []
+        for item in problem.errors(include_url=False):
+            place = tuple(item["loc"])
+            found = "" if item["type"] == "missing" else f" (found {item['input']!r:.60})"
+            faults.append(Fault("type", read.where(place), f"{item['msg']}{found}", "", "see the README's case format"))
+        raise error(*faults) from problem
