@@ -1,0 +1,83 @@
+"""case.yaml: read with lines, written without loss."""
+
+from __future__ import annotations
+
+import json
+from pathlib import Path
+
+import jsonschema
+import pytest
+import yaml
+from byway.knowledge.cases.atomic import fingerprint
+from byway.knowledge.cases.files import dump_case, inside, read_case, write_case
+from byway.knowledge.cases.model import CaseFile, case_schema
+from byway.knowledge.faults import CaseError
+
+VIGNETTES = json.loads((Path(__file__).parents[1] / "data" / "vignettes.json").read_text())
+SCHEMA = Path(__file__).parents[2] / "knowledge" / "cases" / "case.schema.json"
+
+
+def test_the_schema_file_is_current() -> None:
+    """The JSON Schema in the package is the one that the model makes."""
+    assert json.loads(SCHEMA.read_text()) == json.loads(json.dumps(case_schema()))
+
+
+@pytest.mark.parametrize("vignette", VIGNETTES, ids=lambda v: v["id"])
+def test_vignettes_are_cases(vignette: dict, tmp_path: Path) -> None:
+    """Each vignette's case opens as it stands, obeys the schema (jsonschema, draft 2020-12), and round-trips."""
+    jsonschema.validate(vignette["case"], json.loads(SCHEMA.read_text()))
+    path = tmp_path / "case.yaml"
+    path.write_text(yaml.safe_dump(vignette["case"]))
+    case, _ = read_case(path)
+    write_case(tmp_path / "again.yaml", case, None)
+    assert read_case(tmp_path / "again.yaml")[0] == case
+    assert dump_case(case) == (tmp_path / "again.yaml").read_text()
+
+
+@pytest.mark.parametrize(
+    ("text", "said"),
+    [
+        ("stage: later\n", r"case\.yaml:1 stage: .*acute.*later"),
+        ("stage: acute\nlesions: {}\n", r"case\.yaml:2 lesions"),
+        ("stage: acute\nperson:\n  handedness: both\n", r"case\.yaml:3 person\.handedness"),
+        ("stage: acute\nfindings:\n- {sign: aphasia}\n", r"case\.yaml:3 findings\.0\.grade"),
+        ("stage: acute\nstage: acute\n", r"case\.yaml:2 stage: a key that stands twice"),
+        ("stage: !!python/name:os.system x\n", r"case\.yaml:1: a tag"),
+        ("stage: &a acute\ncause: *a\n", r"case\.yaml:1: an anchor"),
+        ("stage: [acute\n", r"case\.yaml:2: .*expected"),
+        ("- acute\n", r"case\.yaml:1: no mapping"),
+        ("", r"case\.yaml:1: no mapping"),
+        ("schema_version: 9\nstage: acute\n", r"case\.yaml:1 schema_version: schema 9; expected at most 1"),
+        ("stage: acute\nlesion:\n  compartments:\n  - {name: a, kind: core, effect: 2, file: a.nii}\n", r"yaml:4 .*effect"),
+        ("stage: acute\nlesion:\n  compartments:\n  - {name: a, kind: core, effect: 1}\n", r"either `file` or `shapes`"),
+    ],
+)
+def test_bad_cases_say_where(text: str, said: str, tmp_path: Path) -> None:
+    """A bad case.yaml gets one line with file, line and key."""
+    path = tmp_path / "case.yaml"
+    path.write_text(text)
+    with pytest.raises(CaseError, match=said) as caught:
+        read_case(path)
+    assert "\n" not in str(caught.value)
+
+
+def test_a_change_by_somebody_else_is_kept(tmp_path: Path) -> None:
+    """Where case.yaml changed since it was read, theirs stays in place and ours is kept beside it."""
+    path = tmp_path / "case.yaml"
+    first = CaseFile(stage="acute")
+    seen = write_case(path, first, None)
+    theirs = dump_case(CaseFile(stage="chronic"))
+    path.write_text(theirs)
+    with pytest.raises(CaseError, match="somebody wrote"):
+        write_case(path, CaseFile(stage="subacute"), seen)
+    assert path.read_text() == theirs
+    beside = [p for p in tmp_path.glob("case.*.yaml")]
+    assert [read_case(p)[0].stage for p in beside] == ["subacute"]
+    assert write_case(path, CaseFile(stage="subacute"), fingerprint(path)) == fingerprint(path)
+
+
+@pytest.mark.parametrize("name", ["../x.nii", "/etc/passwd", "a/../../x.nii"])
+def test_volumes_stay_inside(name: str, tmp_path: Path) -> None:
+    """A file name that leads out of the case folder is refused."""
+    with pytest.raises(CaseError, match="inside the case folder"):
+        inside(tmp_path, name)
