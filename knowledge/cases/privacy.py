@@ -1,0 +1,100 @@
+"""What in a case folder could identify a person: listed before anything leaves, so that somebody looks.
+
+It finds free text in image headers, dates, long numbers, mail addresses and telling file names. It cannot know a
+name when it sees one: the list is for a reader, and an empty list is no promise.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
+
+import nibabel as nib
+import pandas as pd
+from nibabel.filebasedimages import ImageFileError
+
+__all__ = ["Trace", "identifying_traces", "traces_table"]
+
+PATTERNS = {
+    "a date": re.compile(r"\b(?:19|20)\d\d[-_/.]?(?:0[1-9]|1[0-2])[-_/.]?(?:0[1-9]|[12]\d|3[01])\b"
+                         r"|\b\d{1,2}[./]\d{1,2}[./](?:19|20)?\d\d\b"),
+    "a long number": re.compile(r"\b\d{6,}\b"),
+    "a mail address": re.compile(r"\b[\w.+-]+@[\w-]+\.[\w.]+\b"),
+    "a DICOM name": re.compile(r"\b\w+\^\w+"),
+    "a title with a name": re.compile(r"\b(?:Mr|Mrs|Ms|Dr|Prof|Herr|Frau|Mme)\.? [A-Z][a-z]+"),
+}  # fmt: skip
+FREE_TEXT = ("descrip", "aux_file", "intent_name", "db_name", "data_type")
+TEXT_FILES = {".yaml", ".json", ".jsonl", ".md", ".csv"}
+# Times of our own pages and journals are the record of who wrote when; ids and checksums are random or derived.
+OUR_FIELDS = re.compile(r'"(?:time|id|note|replaces|reply_to|process)": ?(?:"[^"]*"|\d+)|^[0-9a-f]{8} ', re.M)
+MOST_TEXT = 2_000_000
+
+
+@dataclass(frozen=True)
+class Trace:
+    """One thing that could identify a person: in which file, where in it, what kind, and the text itself."""
+
+    file: str
+    place: str
+    kind: str
+    found: str
+
+
+def identifying_traces(folder: Path) -> list[Trace]:
+    """Everything in a case folder that could identify a person.
+
+    Parameters
+    ----------
+    folder : Path
+        A case folder. Nothing in it is changed.
+    """
+    traces: list[Trace] = []
+    for path in sorted(p for p in folder.rglob("*") if p.is_file() and not p.is_symlink()):
+        name = path.relative_to(folder).as_posix()
+        if path.parent == folder:
+            traces += [Trace(name, "file name", kind, text) for kind, text in _matches(path.name)]
+        if name.endswith((".nii", ".nii.gz")):
+            traces += _in_header(path, name)
+        elif path.suffix in TEXT_FILES and path.stat().st_size <= MOST_TEXT:
+            traces += _in_text(path, name)
+    return traces
+
+
+def _matches(text: str) -> Iterator[tuple[str, str]]:
+    for kind, pattern in PATTERNS.items():
+        for match in pattern.finditer(text):
+            yield kind, match.group()
+
+
+def _in_header(path: Path, name: str) -> list[Trace]:
+    try:
+        header = nib.load(path).header
+    except (ImageFileError, OSError, ValueError) as error:
+        return [Trace(name, "header", "an unreadable header", str(error).splitlines()[0])]
+    traces = []
+    for field in FREE_TEXT:
+        if field in header:
+            text = bytes(header[field].tobytes()).split(b"\0")[0].decode("latin-1").strip()
+            if text:
+                traces.append(Trace(name, field, "free text in the header", text))
+    for extension in getattr(header, "extensions", ()):
+        text = str(extension.get_content())[:60]
+        traces.append(Trace(name, f"extension {extension.get_code()}", "a header extension", text))
+    return traces
+
+
+def _in_text(path: Path, name: str) -> list[Trace]:
+    text = path.read_text("utf-8", errors="replace")
+    traces = []
+    for number, line in enumerate(text.splitlines(), start=1):
+        shown = OUR_FIELDS.sub("", line)
+        traces += [Trace(name, f"line {number}", kind, found) for kind, found in _matches(shown)]
+    return traces
+
+
+def traces_table(traces: list[Trace]) -> pd.DataFrame:
+    """The traces as a table: file, place, kind, found."""
+    return pd.DataFrame([(t.file, t.place, t.kind, t.found) for t in traces],
+                        columns=["file", "place", "kind", "found"])  # fmt: skip
