@@ -18,9 +18,9 @@ from nibabel.filebasedimages import ImageFileError
 __all__ = ["Trace", "identifying_traces", "traces_table"]
 
 PATTERNS = {
-    "a date": re.compile(r"\b(?:19|20)\d\d[-_/.]?(?:0[1-9]|1[0-2])[-_/.]?(?:0[1-9]|[12]\d|3[01])\b"
+    "a date": re.compile(r"(?<!\d)(?:19|20)\d\d[-_/.]?(?:0[1-9]|1[0-2])[-_/.]?(?:0[1-9]|[12]\d|3[01])(?!\d)"
                          r"|\b\d{1,2}[./]\d{1,2}[./](?:19|20)?\d\d\b"),
-    "a long number": re.compile(r"\b\d{6,}\b"),
+    "a long number": re.compile(r"(?<!\d)\d{6,}(?!\d)"),
     "a mail address": re.compile(r"\b[\w.+-]+@[\w-]+\.[\w.]+\b"),
     "a DICOM name": re.compile(r"\b\w+\^\w+"),
     "a title with a name": re.compile(r"\b(?:Mr|Mrs|Ms|Dr|Prof|Herr|Frau|Mme)\.? [A-Z][a-z]+"),
