@@ -5,13 +5,13 @@ Values only: how it is built (template) or loaded (a site's own atlas, a person'
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
-from numpy.typing import NDArray
-
 from byway.knowledge.space.grid import Grid
+from numpy.typing import NDArray
 
 __all__ = ["Geometry"]
 
@@ -83,4 +83,4 @@ class Geometry:
         """Streamlines of one segment, each (n, 3) in MNI mm."""
         first, last = self.segment_offsets[segment], self.segment_offsets[segment + 1]
         bounds = self.streamline_offsets[first : last + 1]
-        return [self.points_mm[a:b] for a, b in zip(bounds[:-1], bounds[1:], strict=True)]
+        return [self.points_mm[a:b] for a, b in itertools.pairwise(bounds)]
