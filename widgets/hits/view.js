@@ -20,7 +20,7 @@ function bar(row, words) {
 function makeRow(row, words, select) {
   const share = bar(row, words);
   const cells = {
-    share: number(), range: h("td", { class: "bw-hits-range bw-soft" }), overlap: number(), clearance: number(),
+    share: number(), range: h("td", { role: "cell", class: "bw-hits-range bw-soft" }), overlap: number(), clearance: number(),
     where: h("span", { class: "bw-soft" }),
   };
   const low = number(), high = number(), waiting = h("span", { class: "bw-waiting", title: words.interval_waits }, "…");
@@ -30,14 +30,14 @@ function makeRow(row, words, select) {
     glyph(row.kind), h("span", { class: "bw-hits-label" }, row.name),
     h("span", { class: "bw-side", title: words[row.side] }, words[`${row.side}_short`]));
   const anatomy = row.anatomy === "template" ? words.template_short : row.anatomy;
-  const node = h("tr", { class: `bw-hits-row bw-is-${row.kind}`, "data-element": row.element },
-    h("th", { scope: "row" }, name),
-    h("td", { class: "bw-hits-bar" }, share),
-    h("td", { class: "bw-hits-share" }, cells.share),
+  const node = h("tr", { role: "row", class: `bw-hits-row bw-is-${row.kind}`, "data-element": row.element },
+    h("th", { scope: "row", role: "rowheader" }, name),
+    h("td", { role: "cell", class: "bw-hits-bar" }, share),
+    h("td", { role: "cell", class: "bw-hits-share" }, cells.share),
     cells.range,
-    h("td", { class: "bw-hits-clearance" }, cells.clearance, " ", cells.where),
-    h("td", { class: "bw-hits-overlap" }, cells.overlap),
-    h("td", { class: "bw-hits-anatomy bw-soft", title: anatomy }, anatomy));
+    h("td", { role: "cell", class: "bw-hits-clearance" }, cells.clearance, " ", cells.where),
+    h("td", { role: "cell", class: "bw-hits-overlap" }, cells.overlap),
+    h("td", { role: "cell", class: "bw-hits-anatomy bw-soft", title: anatomy }, anatomy));
   node.change = (r, selected) => {
     const path = `damage/${r.element}`;
     share.change(r);
@@ -74,21 +74,19 @@ function render({ model, el }) {
   const copy = h("button", { type: "button", class: "bw-button", title: words.copy_hint, onclick: copyTable }, words.copy);
   const { panel, body, foot } = frame(el, words, "hits", kinds, search, copy, copied);
 
-  const head = h("thead", {}, h("tr", {},
-    h("th", { scope: "col" }, words.element),
-    h("th", { scope: "col", colspan: 2, class: "bw-hits-wide", title: words.share_hint }, words.share),
-    h("th", { scope: "col", class: "bw-hits-range", title: words.range_hint }, words.range),
-    h("th", { scope: "col", class: "bw-hits-clearance", title: words.clearance_hint }, words.clearance),
-    h("th", { scope: "col", class: "bw-hits-overlap", title: words.overlap_hint }, words.overlap),
-    h("th", { scope: "col", class: "bw-hits-anatomy" }, words.anatomy)));
-  const columns = h("colgroup", {},
-    ...["name", "bar", "share", "range", "clearance", "overlap", "anatomy"].map((c) => h("col", { class: `bw-hits-${c}` })));
-  const hit = h("tbody", {});
-  const nearHead = h("tbody", { class: "bw-hits-near" },
-    h("tr", {}, h("th", { colspan: 7, scope: "rowgroup" }, words.near)));
-  const near = h("tbody", { class: "bw-hits-pale" });
+  const head = h("thead", { role: "rowgroup" }, h("tr", { role: "row" },
+    h("th", { scope: "col", role: "columnheader" }, words.element),
+    h("th", { scope: "col", role: "columnheader", class: "bw-hits-wide", title: words.share_hint }, words.share),
+    h("th", { scope: "col", role: "columnheader", class: "bw-hits-range", title: words.range_hint }, words.range),
+    h("th", { scope: "col", role: "columnheader", class: "bw-hits-clearance", title: words.clearance_hint }, words.clearance),
+    h("th", { scope: "col", role: "columnheader", class: "bw-hits-overlap", title: words.overlap_hint }, words.overlap),
+    h("th", { scope: "col", role: "columnheader", class: "bw-hits-anatomy" }, words.anatomy)));
+  const hit = h("tbody", { role: "rowgroup" });
+  const nearHead = h("tbody", { role: "rowgroup", class: "bw-hits-near" },
+    h("tr", { role: "row" }, h("th", { scope: "rowgroup", role: "rowheader" }, words.near)));
+  const near = h("tbody", { role: "rowgroup", class: "bw-hits-pale" });
   const empty = h("p", { class: "bw-empty" });
-  const table = h("table", { class: "bw-hits-table", "aria-label": words.title }, columns, head, hit, nearHead, near);
+  const table = h("table", { class: "bw-hits-table", "aria-label": words.title, role: "table" }, head, hit, nearHead, near);
   body.append(h("div", { class: "bw-hits-scroll" }, table, empty));
   const uncharted = number();
   foot.append(h("p", { class: "bw-hits-uncharted" }, uncharted, " ", words.uncharted),
