@@ -1,0 +1,132 @@
+"""Virtual anatomies: random but repeatable displacements of elements against the lesion.
+
+A draw is one person and one registration. Half of the variance of an element's displacement is a smooth field that
+all elements in that place share, half is the element's own; a rigid jitter of the registration is added.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy import sparse, special
+
+__all__ = ["Anatomies", "normal_levels"]
+
+_NODE = 30.0  # distance between the nodes of the shared field, voxels: it is smooth over about this length
+_CAP = 2.5  # no displacement is longer than so many standard deviations along an axis
+
+
+def normal_levels(count: int) -> NDArray[np.float64]:
+    """``count`` equally likely values with mean 0 and standard deviation 1 that stand for a normal distribution.
+
+    Examples
+    --------
+    >>> normal_levels(3).round(3).tolist()
+    [-1.225, 0.0, 1.225]
+    """
+    levels = special.ndtri((np.arange(count) + 0.5) / count)
+    levels = (levels - levels[::-1]) / 2  # exactly symmetric
+    scale = np.sqrt(np.mean(levels**2))
+    return np.asarray(levels / scale if scale > 0 else levels)
+
+
+@dataclass(frozen=True)
+class Anatomies:
+    """Random numbers of M draws, the same for every lesion.
+
+    Every second half of the draws mirrors the first half, left for right, so that a mirrored lesion has mirrored
+    intervals to the last digit (an odd draw at the end stands alone).
+
+    Parameters
+    ----------
+    draws : int
+        Number of draws, M.
+    seed : int
+        Seed.
+    jitter_mm, jitter_deg : float
+        Standard deviation along and about each axis of the registration's rigid error.
+    """
+
+    draws: int
+    seed: int
+    jitter_mm: float
+    jitter_deg: float
+
+    def displacements(
+        self,
+        centre: NDArray[np.floating],
+        element: NDArray[np.integer],
+        spread: NDArray[np.floating],
+        partner: NDArray[np.integer],
+        shape: tuple[int, int, int],
+    ) -> NDArray[np.int16]:
+        """Displacements in whole voxels.
+
+        Parameters
+        ----------
+        centre : (C, 3) float array
+            Where, in voxels.
+        element : (C,) int array
+            Whose.
+        spread : (C,) float array
+            Standard deviation along each axis of the between-subject displacement, voxels.
+        partner : (E,) int array
+            The element on the other side.
+        shape : tuple of int
+            Shape of the grid; its middle along the first axis is the midline.
+
+        Returns
+        -------
+        (M, C, 3) int16
+        """
+        half = (self.draws + 1) // 2
+        rng = np.random.default_rng(self.seed)
+        nodes = tuple(int(np.ceil(n / _NODE)) + 3 for n in shape)
+        field = rng.standard_normal((half, int(np.prod(nodes)), 3), np.float32)
+        own = rng.standard_normal((half, len(partner), 3), np.float32)
+        shift = rng.standard_normal((half, 3)) * self.jitter_mm
+        turn = np.deg2rad(rng.standard_normal((half, 3)) * self.jitter_deg)
+        middle = (np.array(shape) - 1) / 2.0
+        flip = np.array([-1.0, 1.0, 1.0], np.float32)
+
+        limit = np.rint(self.reach(spread))[None, :, None]
+        out = np.empty((self.draws, len(centre), 3), np.int16)
+        for mirrored in range(2):
+            count = half if mirrored == 0 else self.draws - half
+            sign = flip if mirrored else np.float32(1)
+            at = (centre - middle) * sign
+            whose = partner[element] if mirrored else element
+            weight = _interpolation(at, nodes)
+            shared = np.stack([weight @ field[:count, :, axis].T for axis in range(3)], axis=-1)
+            move = np.sqrt(0.5) * (shared.transpose(1, 0, 2) + own[:count, whose])
+            move *= spread[None, :, None]
+            move += shift[:count, None] + np.cross(turn[:count, None], at[None])
+            move = np.clip(np.rint(move * sign), -limit, limit)
+            out[half * mirrored : half * mirrored + count] = move
+        return out
+
+    def reach(self, spread: NDArray[np.floating]) -> NDArray[np.float64]:
+        """Longest displacement along an axis, voxels, that is possible for a spread (voxels); longer ones are cut."""
+        rigid = self.jitter_mm**2 + (np.deg2rad(self.jitter_deg) * 70) ** 2
+        return np.asarray(np.ceil(_CAP * np.sqrt(np.asarray(spread, float) ** 2 + rigid)), float)
+
+
+def _interpolation(at: NDArray[np.floating], nodes: tuple[int, ...]) -> sparse.csr_matrix:
+    """Weights (C, N) of the shared field's nodes at places given in voxels from the middle; unit variance."""
+    place = at / _NODE + (np.array(nodes) - 1) / 2
+    place = np.clip(place, 0, np.array(nodes) - 1.001)
+    low = np.floor(place).astype(int)
+    part = place - low
+    columns, weights = [], []
+    for corner in np.ndindex(2, 2, 2):
+        columns.append(np.ravel_multi_index((low + corner).T, nodes))
+        weights.append(np.prod(np.where(corner, part, 1 - part), axis=1))
+    weight = np.stack(weights, axis=1)
+    weight /= np.sqrt((weight**2).sum(axis=1, keepdims=True))
+    rows = np.repeat(np.arange(len(at)), 8)
+    matrix = sparse.csr_matrix(
+        (weight.ravel(), (rows, np.stack(columns, axis=1).ravel())), shape=(len(at), int(np.prod(nodes)))
+    )
+    return matrix.astype(np.float32)
