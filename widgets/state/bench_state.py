@@ -1,0 +1,254 @@
+"""The observable case: edits and findings in, sequence numbers out."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from typing import Any
+
+import traitlets as t
+from byway.knowledge.faults import BywayError, Fault
+from byway.knowledge.lesion.lesion import Lesion
+from byway.knowledge.space.geometry import Geometry
+from byway.widgets.state.drawing import Change, Drawing, Settings, Style
+from byway.widgets.state.edits import apply_edit, voxels_edit
+from byway.widgets.state.resting import Resting
+from byway.widgets.state.scans import Scans
+from byway.widgets.state.science import NoScience, Science
+
+__all__ = ["BenchState"]
+
+Journal = Callable[[dict[str, Any]], Any]
+
+
+class BenchState(t.HasTraits):
+    """One case under hands, which every panel observes.
+
+    A panel observes a sequence number, then reads the attribute that it announces:
+
+    =================  =====================================================================
+    trait              announces
+    =================  =====================================================================
+    ``lesion_seq``     ``lesion``, ``last_change`` (and who made it), ``drawing``
+    ``damage_seq``     ``damage`` (point estimates; at once after every edit)
+    ``accounts_seq``   ``ensemble``, ``explanation`` (when the hand rests)
+    ``findings_seq``   ``findings``
+    ``case_seq``       ``case`` (another case, or its person, stage or cause changed)
+    ``scans_seq``      ``scans``
+    ``selected``       the element id ``key@side`` that panels point out, or ``""``
+    ``cursor_mm``      the crosshair, MNI mm
+    ``busy``           whether accounts are on their way
+    ``notice``         one line for the user: the last fault or remark, or ``""``
+    =================  =====================================================================
+
+    Parameters
+    ----------
+    case : Case, optional
+        From ``byway.knowledge.cases``; None draws on an empty template.
+    science : Science, optional
+        What answers; none answers nothing.
+    journal : callable, optional
+        Takes a plain dict a change, before the reasoning begins.
+    pause_s : float
+        How long the hand must rest before intervals and accounts are reckoned.
+    """
+
+    lesion_seq = t.Int(0)
+    damage_seq = t.Int(0)
+    accounts_seq = t.Int(0)
+    findings_seq = t.Int(0)
+    case_seq = t.Int(0)
+    scans_seq = t.Int(0)
+    selected = t.Unicode("")
+    cursor_mm = t.Tuple(t.Float(), t.Float(), t.Float(), default_value=(0.0, 0.0, 0.0))
+    busy = t.Bool(False)
+    notice = t.Unicode("")
+
+    def __init__(self, case: Any = None, science: Science | None = None, *, journal: Journal | None = None,
+                 pause_s: float = 0.35) -> None:  # fmt: skip
+        super().__init__()
+        self.science: Science = science if science is not None else NoScience()
+        self.journal = journal
+        self.resting = Resting(pause_s)
+        self.scans = Scans()
+        self.last_change: Change | None = None
+        self.last_origin: Mapping[str, Any] = {}
+        self.damage: Any = None
+        self.ensemble: Any = None
+        self.explanation: Any = None
+        self.case: Any = None
+        self.findings: tuple[Any, ...] = ()
+        self.drawing = Drawing()
+        self._lesion: Lesion | None = None
+        if case is not None:
+            self.open(case)
+
+    # -- the case ---------------------------------------------------------------------------------------------------
+
+    def open(self, case: Any) -> None:
+        """Show another case; the drawing starts from its lesion, with an empty history."""
+        self.case = case
+        self.drawing = drawing_of(case.lesion)
+        graph = self.science.graph
+        self.findings = tuple(case.findings(graph)) if graph is not None else ()
+        self._lesion = None
+        self.ensemble = self.explanation = None
+        self.case_seq += 1
+        self.findings_seq += 1
+        self._changed(None, {})
+
+    def set_case(self, case: Any) -> None:
+        """Put in a case whose person, stage, cause or priors changed; drawing and findings stay."""
+        self.case = case
+        self.case_seq += 1
+        self._note({"kind": "case", "spec": case.spec.model_dump(mode="json")})
+        self._rest()
+
+    @property
+    def geometry(self) -> Geometry | None:
+        """Geometry of all elements, or None."""
+        return self.science.geometry
+
+    # -- the drawing ------------------------------------------------------------------------------------------------
+
+    @property
+    def lesion(self) -> Lesion:
+        """The lesion as it is drawn now; frozen."""
+        if self._lesion is None:
+            spec = self.case.spec.lesion if self.case is not None else None
+            self._lesion = self.drawing.lesion(
+                drawn_on=spec.drawn_on if spec else None, boundary_mm=spec.boundary_mm if spec else None
+            )
+        return self._lesion
+
+    def edit(self, edit: Mapping[str, Any], origin: Mapping[str, Any] | None = None) -> Change | None:
+        """Make one edit; see :mod:`byway.widgets.state.edits` for the records.
+
+        Parameters
+        ----------
+        edit : mapping
+            A plain record with the edit's name under ``op``.
+        origin : mapping, optional
+            Who made it (a view's id and its own running number); handed on with the change.
+
+        Returns
+        -------
+        Change or None
+            None where an undo or redo had nowhere to go.
+
+        Raises
+        ------
+        BywayError
+            If the record is not usable; nothing has changed then.
+        """
+        change = apply_edit(self.drawing, edit, self.scans)
+        if change is not None:
+            self._changed(change, origin or {}, {"kind": "edit", "edit": dict(edit)})
+        return change
+
+    def undo(self) -> Change | None:
+        """Take back the last edit."""
+        return self.edit({"op": "undo"})
+
+    def redo(self) -> Change | None:
+        """Make the last undone edit again."""
+        return self.edit({"op": "redo"})
+
+    def load_lesion(self, lesion: Lesion) -> Change:
+        """Replace the drawing by a lesion, as one edit that can be undone."""
+        new = drawing_of(lesion)
+        indices = (new.flat != self.drawing.flat).nonzero()[0]
+        change = self.drawing.configure("load", new.settings, indices, new.flat[indices])
+        self._changed(change, {})
+        for c in range(len(new.styles)):
+            self._note({"kind": "edit", "edit": voxels_edit(new.voxels_of(c), c, fresh=True, overlap=True)})
+        return change
+
+    def hand(self, down: bool) -> None:
+        """The hand is on the table, or off: nothing heavy starts while it is down."""
+        self.resting.hold(down)
+
+    def _changed(self, change: Change | None, origin: Mapping[str, Any], entry: dict[str, Any] | None = None) -> None:
+        self._lesion = None
+        self.last_change, self.last_origin = change, origin
+        self.lesion_seq += 1
+        self.damage = self.science.damage(self.lesion)
+        self.damage_seq += 1
+        if entry is not None:
+            self._note(entry)
+        self._rest()
+
+    # -- findings ---------------------------------------------------------------------------------------------------
+
+    def set_findings(self, findings: Sequence[Any]) -> None:
+        """Replace all findings (``byway.knowledge.reasoning.findings.Finding``)."""
+        self.findings = tuple(findings)
+        self.findings_seq += 1
+        self._note({"kind": "findings", "findings": [dict(vars(f)) for f in self.findings]})
+        self._rest()
+
+    def set_finding(self, finding: Any) -> None:
+        """Put in one finding, in place of the one with the same sign and side."""
+        rest = [f for f in self.findings if (f.sign, f.side) != (finding.sign, finding.side)]
+        self.set_findings([*rest, finding])
+
+    def drop_finding(self, sign: str, side: str) -> None:
+        """Set a sign back to not tested."""
+        self.set_findings([f for f in self.findings if (f.sign, f.side) != (sign, side)])
+
+    # -- when the hand rests ----------------------------------------------------------------------------------------
+
+    def _rest(self) -> None:
+        lesion, damage, case, findings = self.lesion, self.damage, self.case, self.findings
+        if case is None or damage is None:
+            return
+        self.busy = True
+        self.resting.ask(lambda check: self.science.explain(lesion, damage, case, findings, check), self._explained)
+
+    def _explained(self, result: Any) -> None:
+        self.busy = self.resting.busy
+        if isinstance(result, Exception):
+            self.tell(result)
+            return
+        self.ensemble, self.explanation = result
+        self.accounts_seq += 1
+
+    def settle(self, timeout_s: float = 120.0) -> None:
+        """Wait until intervals and accounts are there."""
+        self.resting.settle(timeout_s)
+
+    # -- odds and ends ----------------------------------------------------------------------------------------------
+
+    def tell(self, what: Exception | str) -> None:
+        """Show one line to the user; a fault that is none of byway's own is named by its type."""
+        text = str(what) if isinstance(what, str | BywayError) else f"{type(what).__name__}: {what}"
+        self.notice = ""
+        self.notice = text
+
+    def _note(self, entry: dict[str, Any]) -> None:
+        if self.journal is None:
+            return
+        try:
+            self.journal(entry)
+        except OSError as error:
+            self.tell(BywayError(Fault("journal", "case folder", f"the change was not journalled: {error}", "",
+                                       "check the disk, then save")))  # fmt: skip
+
+    def close(self) -> None:
+        """Stop the work in the background."""
+        self.resting.close()
+
+
+def drawing_of(lesion: Lesion) -> Drawing:
+    """A drawing that starts from a lesion; its compartments keep their order and may overlap.
+
+    Raises
+    ------
+    BywayError
+        If there are more than eight compartments.
+    """
+    styles = [Style(c.name, c.kind, c.effect) for c in lesion.compartments]
+    drawing = Drawing(styles=styles)
+    for c, compartment in enumerate(lesion.compartments):
+        drawing.bits[compartment.mask] |= drawing.bit(c)
+    drawing.settings = Settings(drawing.styles, lesion.effect_volume, lesion.scale, lesion.notes)
+    return drawing

@@ -1,0 +1,53 @@
+"""What the state asks of byway.knowledge, in one narrow place, so that a test can put a small stand-in there."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any, Protocol
+
+from byway.knowledge.lesion.lesion import Lesion
+from byway.knowledge.space.geometry import Geometry
+
+__all__ = ["NoScience", "Science"]
+
+
+class Science(Protocol):
+    """The questions; answers are the values of ``byway.knowledge``, passed on as they are."""
+
+    @property
+    def graph(self) -> Any:
+        """The typed graph, or None."""
+
+    @property
+    def geometry(self) -> Geometry | None:
+        """Geometry of all elements, or None."""
+
+    @property
+    def names(self) -> dict[str, str]:
+        """Names of regions, segments, functions and signs by bare key."""
+
+    def damage(self, lesion: Lesion) -> Any:
+        """Point damage, at once; None without geometry."""
+
+    def explain(
+        self, lesion: Lesion, damage: Any, case: Any, findings: Any, check: Callable[[], None]
+    ) -> tuple[Any, Any]:
+        """The ensemble and the explanation; calls ``check`` between parts, which may raise to stop it."""
+
+
+class NoScience:
+    """Draws without reasoning: no geometry, no graph."""
+
+    graph: Any = None
+    geometry: Geometry | None = None
+    names: dict[str, str] = {}  # noqa: RUF012 - nothing writes to it
+
+    def damage(self, lesion: Lesion) -> Any:
+        """Nothing is known."""
+        return None
+
+    def explain(
+        self, lesion: Lesion, damage: Any, case: Any, findings: Any, check: Callable[[], None]
+    ) -> tuple[Any, Any]:
+        """Nothing is known."""
+        return None, None
