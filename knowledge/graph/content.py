@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
-from typing import Literal, cast, get_args
+from typing import Any, Literal, Self, cast, get_args
 
 from byway.knowledge.graph.records import (
     Claim,
@@ -76,6 +76,18 @@ class Content:
     origins: Mapping[tuple[Kind, str], Origin] = field(default_factory=dict)
     disputes: Mapping[tuple[Kind, str], tuple[Dispute, ...]] = field(default_factory=dict)
     layers: tuple[str, ...] = ("base",)
+
+    @classmethod
+    def of(
+        cls,
+        records: Mapping[Kind, Mapping[str, Record]],
+        origins: Mapping[tuple[Kind, str], Origin],
+        disputes: Mapping[tuple[Kind, str], tuple[Dispute, ...]] | None = None,
+        layers: tuple[str, ...] = ("base",),
+    ) -> Self:
+        """Content of records held by kind and key; each must be a record of its kind."""
+        values: dict[str, Any] = {PLURALS[kind]: found for kind, found in records.items()}
+        return cls(**values, origins=origins, disputes=disputes or {}, layers=layers)
 
     def records(self, kind: Kind) -> Mapping[str, Record]:
         """All records of a kind, by key."""

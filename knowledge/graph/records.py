@@ -68,17 +68,20 @@ Domain = Literal[
 class Record(BaseModel):
     """Base of all records: frozen, and no unknown fields."""
 
-    model_config = ConfigDict(frozen=True, extra="forbid")
+    model_config = ConfigDict(frozen=True, extra="forbid", allow_inf_nan=False)
 
     key: str
 
 
 class Source(Record):
-    """A publication. ``checked`` says whether its text was read or is recalled from memory."""
+    """A publication. ``checked`` says whether its text was read or is recalled from memory.
+
+    ``title`` is None where it is not recalled with certainty: better no title than a wrong one.
+    """
 
     authors: str
     year: Annotated[int, Field(ge=1800, le=2100)]
-    title: str
+    title: str | None = None
     container: str
     doi: str | None = None
     checked: Literal["read", "memory"]

@@ -96,8 +96,9 @@ def resolved_chains(
 ) -> list[tuple[str, float, tuple[str, ...]]]:
     """Route key, usual load and element ids of every route of one copy.
 
-    A copy with two sides (a bilateral function) has each route once a side, with half its load; a route that names
-    only midline and fixed elements is the same on both sides and stays whole.
+    A copy with two sides (a bilateral function) has each route once a side, with half its load. A route that is the
+    same on both sides (midline and fixed elements alone), or whose mirror is its own reverse (a commissural route from
+    a region to its counterpart), is one route and stays whole.
 
     Raises
     ------
@@ -109,7 +110,8 @@ def resolved_chains(
         versions: dict[tuple[str, ...], list[Hemisphere]] = {}
         for side in sides:
             ids = tuple(resolve_reference(content, reference, side) for reference in route.chain)
-            versions.setdefault(ids, []).append(side)
+            same = ids[::-1] if ids[::-1] in versions else ids
+            versions.setdefault(same, []).append(side)
         for ids, written_on in versions.items():
             key = route.key if len(versions) == 1 else f"{route.key}@{written_on[0]}"
             chains.append((key, route.usual_load * len(written_on) / len(sides), ids))
