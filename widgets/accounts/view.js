@@ -1,0 +1,80 @@
+// The accounts panel: rivals side by side, each as a card, then what would tell them apart.
+import { fill, frame, h, keep, mark, number, percent, say, setNumber, watch } from "../front/kit.js";
+import { makeCard } from "./card.js";
+import { nextImages, nextTests } from "./next.js";
+import { redo } from "./parts.js";
+
+function share(account, words) {
+  const node = h("button", { type: "button", class: "bw-share" });
+  node.change = (a) => {
+    node.style.flexGrow = String(Math.max(a.posterior, 0.004));
+    mark(node, "data-rank", a.index < 6 ? a.index + 1 : "rest");
+    mark(node, "data-plain", a.is_plain);
+    const label = `${a.index + 1}. ${a.title}, ${percent(a.posterior)}`;
+    mark(node, "title", label);
+    mark(node, "aria-label", label);
+    say(node, a.posterior > 0.05 ? a.index + 1 : "");
+  };
+  return node;
+}
+
+function render({ model, el }) {
+  const words = model.get("words");
+  const select = (element) => {
+    model.set("selected", element);
+    model.save_changes();
+  };
+  const busy = h("span", { class: "bw-busy bw-soft", role: "status" });
+  const { panel, body, foot } = frame(el, words, "accounts", busy);
+  const strip = h("div", { class: "bw-strip", role: "group", "aria-label": words.strip_label });
+  const cards = h("div", { class: "bw-cards" });
+  const more = h("button", { type: "button", class: "bw-button bw-more", onclick: () => { all = !all; draw(); } });
+  const empty = h("p", { class: "bw-empty" }, words.nothing);
+  const tests = h("section", { class: "bw-next", "aria-label": words.next_tests });
+  const images = h("section", { class: "bw-next", "aria-label": words.next_images });
+  body.append(h("p", { class: "bw-lead bw-soft" }, words.lead), strip, cards, more, empty, tests, images);
+  const uncharted = number();
+  foot.append(h("p", {}, uncharted, " ", words.uncharted), h("p", {}, words.anatomy_note));
+  let all = false;
+  let first = true;
+
+  function reveal(key) {
+    const card = [...cards.children].find((node) => node.dataset.account === key);
+    if (!card) return;
+    card.open(true);
+    card.scrollIntoView({ block: "nearest", behavior: "smooth" });
+  }
+
+  function draw() {
+    const told = model.get("told") || {};
+    const accounts = told.accounts || [];
+    const few = all ? accounts : accounts.filter((a, i) => i < 4 || a.is_plain);
+    keep(strip, accounts, (a) => a.key, (a) => {
+      const node = share(a, words);
+      node.addEventListener("click", () => { all = all || !few.includes(a); draw(); reveal(a.key); });
+      return node;
+    }, (node, a) => node.change(a));
+    keep(cards, few, (a) => a.key, (a) => makeCard(a, words, select), (node, a) => node.change(a));
+    if (first && accounts.length) {
+      cards.firstChild.open(true);
+      first = false;
+    }
+    strip.hidden = accounts.length < 2;
+    more.hidden = accounts.length <= few.length && !all;
+    say(more, all ? words.show_fewer : fill(words.show_all, { count: accounts.length }));
+    empty.hidden = accounts.length > 0;
+    redo(tests, told.next_tests || [], (rows) => (rows.length ? nextTests(rows, words) : []));
+    redo(images, told.next_images || [], (rows) => (rows.length ? nextImages(rows, words, select) : []));
+    tests.hidden = !tests.firstChild;
+    images.hidden = !images.firstChild;
+    setNumber(uncharted, "uncharted_share", told.uncharted_share, percent(told.uncharted_share));
+    foot.firstChild.hidden = told.uncharted_share === undefined || told.uncharted_share === null;
+    say(busy, model.get("busy") ? words.thinking : "");
+    mark(panel, "data-stamp", model.get("stamp"));
+    mark(panel, "aria-busy", model.get("busy") ? "true" : null);
+  }
+
+  return watch(model, ["told", "busy", "stamp"], draw);
+}
+
+export default { render };
