@@ -1,1 +1,5 @@
-"""The accounts panel."""
+"""The accounts panel: rival explanations as cards, on one ledger."""
+
+from byway.widgets.accounts.panel import AccountsPanel
+
+__all__ = ["AccountsPanel"]

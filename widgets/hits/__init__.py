@@ -1,1 +1,5 @@
-"""The hits panel."""
+"""The hits panel: what the lesion reaches."""
+
+from byway.widgets.hits.panel import HitsPanel
+
+__all__ = ["HitsPanel"]

@@ -1,0 +1,123 @@
+"""Accounts, next tests and next images as plain values for the browser. Nothing is reckoned here but sums and names."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from typing import Any
+
+import pandas as pd
+
+from byway.widgets.panel import element_words
+from byway.widgets.wire import plain
+
+__all__ = ["account_key", "claims_of", "told_of"]
+
+PLAIN_KIND = "cortical_damage"
+MOST_ELEMENTS = 8
+MOST_CHANGES = 12
+MOST_NEXT = 8
+
+
+def told_of(explanation: Any, graph: Any) -> dict[str, Any]:
+    """Everything the accounts panel draws.
+
+    Parameters
+    ----------
+    explanation : Explanation or None
+    graph : Graph or None
+        Gives names; keys stand in without it.
+    """
+    if explanation is None:
+        return {}
+    accounts = [_account(account, i, graph) for i, account in enumerate(explanation.accounts)]
+    return {
+        "accounts": plain(accounts),
+        "next_tests": plain(_next_tests(explanation.next_tests)),
+        "next_images": plain(_next_images(explanation.next_images, graph)),
+        "uncharted_share": plain(explanation.uncharted_share),
+    }
+
+
+def account_key(account: Any) -> str:
+    """What tells an account from the others, whatever its rank: its departures, or its kind and title."""
+    return str(getattr(account, "key", None) or f"{account.kind}: {account.title}")
+
+
+def _account(account: Any, index: int, graph: Any) -> dict[str, Any]:
+    ledger = _rows(account.ledger)
+    return {
+        "key": account_key(account),
+        "index": index,
+        "title": account.title,
+        "kind": account.kind,
+        "is_plain": account.kind == PLAIN_KIND,
+        "posterior": account.posterior,
+        "words": account.words,
+        "odds_vs_cortical": account.odds_vs_cortical,
+        "elements": [element_words(graph, element) for element in account.elements[:MOST_ELEMENTS]],
+        "explains": _signs(account.explains, ledger, graph),
+        "leaves": _signs(account.leaves, ledger, graph),
+        "predicts_absent": _signs(account.predicts_absent, ledger, graph),
+        "ledger": ledger,
+        "ledger_sum": {name: sum(row[name] for row in ledger) for name in ("loglik", "vs_cortical")},
+        "bottlenecks": [{"words": b.words, "capacity": b.capacity} for b in account.bottlenecks],
+        "counterfactuals": _changes(account.counterfactuals, graph),
+        "claims_for": claims_of(account.claims_for, graph),
+        "claims_against": claims_of(account.claims_against, graph),
+        "cautions": list(account.cautions),
+    }
+
+
+def _rows(table: pd.DataFrame) -> list[dict[str, Any]]:
+    return [dict(zip(table.columns, row, strict=True)) for row in table.itertuples(index=False, name=None)]
+
+
+def _sign_name(sign: str, graph: Any) -> str:
+    return str(graph.signs[sign].name) if graph is not None and sign in graph.signs else sign
+
+
+def _signs(sign_ids: Iterable[str], ledger: list[dict[str, Any]], graph: Any) -> list[dict[str, Any]]:
+    found = {f"{row['sign']}@{row['side']}": row["found"] for row in ledger}
+    rows = []
+    for sign_id in sign_ids:
+        sign, _, side = sign_id.rpartition("@")
+        rows.append({"sign": sign, "side": side, "name": _sign_name(sign, graph), "found": found.get(sign_id)})
+    return rows
+
+
+def _changes(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:
+    rows = []
+    for row in _rows(table)[:MOST_CHANGES]:
+        sign, _, side = str(row["sign"]).rpartition("@")
+        rows.append({"element": element_words(graph, row["element"]), "sign": sign, "side": side,
+                     "name": _sign_name(sign, graph), "change": row["change"]})  # fmt: skip
+    return rows
+
+
+def claims_of(claims: Iterable[Any], graph: Any) -> list[dict[str, Any]]:
+    """Claims with their sources spelt out: authors, year, title, container, and whether the text was read."""
+    rows = []
+    for claim in claims:
+        record = graph.claims[claim] if isinstance(claim, str) and graph is not None else claim
+        sources = [_source(source, graph) for source in record.sources]
+        rows.append({"key": record.key, "says": record.says, "grade": record.grade, "kind": record.kind,
+                     "population": record.population, "stance": record.stance, "note": record.note,
+                     "sources": sources})  # fmt: skip
+    return rows
+
+
+def _source(key: str, graph: Any) -> dict[str, Any]:
+    record = graph.sources.get(key) if graph is not None else None
+    if record is None:
+        return {"key": key, "text": key, "doi": None, "checked": "memory"}
+    title = f" {record.title}." if record.title else ""
+    text = f"{record.authors} ({record.year}){title} {record.container}"
+    return {"key": key, "text": text, "doi": record.doi, "checked": record.checked}
+
+
+def _next_tests(table: pd.DataFrame) -> list[dict[str, Any]]:
+    return _rows(table.head(MOST_NEXT))
+
+
+def _next_images(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:
+    return [{**row, "element": element_words(graph, row["element"])} for row in _rows(table.head(MOST_NEXT))]

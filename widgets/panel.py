@@ -1,0 +1,112 @@
+"""What every panel is: a widget that observes one state, takes its labels from the word table, and stands alone."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any, ClassVar
+
+import anywidget
+import traitlets as t
+
+from byway.knowledge.faults import BywayError
+from byway.knowledge.graph.references import split_reference
+from byway.widgets.state import BenchState
+from byway.widgets.words import section
+
+__all__ = ["Panel", "element_words", "state_of"]
+
+
+def state_of(source: Any) -> BenchState:
+    """The state that a panel observes.
+
+    Parameters
+    ----------
+    source : BenchState or Explanation
+        A state is shared as it is; an explanation gets a state of its own that never changes.
+
+    Raises
+    ------
+    TypeError
+        Anything else.
+    """
+    if isinstance(source, BenchState):
+        return source
+    if hasattr(source, "accounts") and hasattr(source, "damage"):
+        state = BenchState()
+        state.explanation = source
+        return state
+    raise TypeError(f"a panel shows a BenchState or an Explanation, not {type(source).__name__}")
+
+
+class Panel(anywidget.AnyWidget):
+    """Base of the panels.
+
+    Parameters
+    ----------
+    source : BenchState or Explanation
+        What to show. A panel never changes an explanation; it changes a state only through the state's own methods.
+
+    Notes
+    -----
+    ``stamp`` moves on when everything that belongs to one change has been sent, so that the browser draws once.
+    """
+
+    sections: ClassVar[tuple[str, ...]] = ()
+
+    words = t.Dict().tag(sync=True)
+    stamp = t.Int(0).tag(sync=True)
+    selected = t.Unicode("").tag(sync=True)
+
+    def __init__(self, source: Any, **traits: Any) -> None:
+        self.state = state_of(source)
+        self._watched: list[tuple[Callable[[Any], None], list[str]]] = []
+        super().__init__(words=section("shared", "panel", *self.sections), selected=self.state.selected, **traits)
+        self._link = t.link((self.state, "selected"), (self, "selected"))
+        self.on_msg(self._heard)
+
+    @property
+    def graph(self) -> Any:
+        """The graph in use, or None where the state has none."""
+        graph = self.state.science.graph
+        return graph if graph is not None else getattr(self.state.explanation, "graph", None)
+
+    def when(self, names: list[str], call: Callable[[], None]) -> None:
+        """Call when any named trait of the state moves, until the panel is closed."""
+
+        def heard(_: Any) -> None:
+            call()
+
+        self.state.observe(heard, names)
+        self._watched.append((heard, names))
+
+    def close(self) -> None:
+        """Stop observing and remove the widget."""
+        for heard, names in self._watched:
+            self.state.unobserve(heard, names)
+        self._watched.clear()
+        self._link.unlink()
+        super().close()
+
+    def _heard(self, _: Any, content: Any, buffers: Any) -> None:
+        """A message from the browser; a fault in it becomes a notice and changes nothing."""
+        try:
+            self.on_message(content, buffers)
+        except (BywayError, KeyError, TypeError, ValueError) as error:
+            self.state.tell(error)
+            self.on_refused()
+
+    def on_message(self, content: dict[str, Any], buffers: list[Any]) -> None:
+        """Act on a message of the front end."""
+
+    def on_refused(self) -> None:
+        """Show again what holds, after a message that could not be acted on."""
+
+
+def element_words(graph: Any, element: str) -> dict[str, str]:
+    """Id, kind, name and side of an element, for a chip; the key stands in where the graph has no name."""
+    key, side = split_reference(element)
+    kind = "segment" if "." in key else "region"
+    name = key
+    if graph is not None and (key in graph.regions or key in graph.segments):
+        name = graph.name_of(key)
+    return {"id": element, "kind": kind, "name": name, "side": side or "midline"}
