@@ -8,6 +8,8 @@ from functools import cached_property
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault, nearest
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.loading import load_graph
@@ -15,7 +17,6 @@ from byway.knowledge.space.build import build_geometry, geometry_hash
 from byway.knowledge.space.cache import load_entry, store_entry
 from byway.knowledge.space.geometry import Geometry
 from byway.knowledge.space.grid import TEMPLATE_GRID
-from numpy.typing import NDArray
 
 __all__ = ["Template", "load_template", "spread_by_key"]
 

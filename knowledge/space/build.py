@@ -6,9 +6,11 @@ import hashlib
 import json
 import zlib
 from collections.abc import Mapping
-from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
+from tqdm.auto import tqdm
+
 from byway.knowledge.graph.records import Region, Segment
 from byway.knowledge.space.bundles import STREAMLINES, Bundle, Ending, make_bundle
 from byway.knowledge.space.courses import is_mirror_image_of_itself, pull_course
@@ -16,8 +18,6 @@ from byway.knowledge.space.geometry import Geometry
 from byway.knowledge.space.grid import TEMPLATE_GRID
 from byway.knowledge.space.parcels import grow_parcels
 from byway.knowledge.space.template import template_hash
-from numpy.typing import NDArray
-from tqdm.auto import tqdm
 
 __all__ = ["BUILD_VERSION", "build_geometry", "geometry_hash"]
 
@@ -78,7 +78,7 @@ def build_geometry(
         bundles: dict[str, Bundle] = {}
         core_lines: dict[str, NDArray[np.float32]] = {}
         for segment in segments.values():
-            for element, line, bundle in _both_sides(segment, lines, segments, parcels):
+            for element, line, bundle in _both_sides(segment, lines, segments, parcels, bundles):
                 core_lines[element] = line.astype(np.float32)
                 bundles[element] = bundle
             bar.update()
@@ -99,40 +99,55 @@ def _one_sided(points: NDArray[np.floating]) -> NDArray[np.float64]:
     return np.column_stack([np.minimum(points[:, 0], -_MIDLINE_GAP_MM), points[:, 1:]])
 
 
-@dataclass(frozen=True)
-class _End:
-    place: str
-    point: NDArray[np.float64]
-
-
-def _hands_over(
+def _meeting(
     key: str, last: bool, lines: Mapping[str, NDArray[np.float64]], segments: Mapping[str, Segment]
-) -> bool:
+) -> list[str]:
+    """Keys of segments that take over at one end of a segment (at its last point, or at its first)."""
     here = lines[key][-1 if last else 0]
-    pathway = segments[key].pathway
-    return any(
-        np.linalg.norm(line[end] - here) <= _SAME_PLACE_MM
-        for other, line in lines.items()
-        if other != key and segments[other].pathway == pathway
-        for end in ((0,) if last else (-1,))
-    )
+    place = segments[key].to_place if last else segments[key].from_place
+    found = []
+    for other, line in lines.items():
+        if other == key:
+            continue
+        segment = segments[other]
+        same_junction = place.startswith("wm:") and place in (segment.from_place, segment.to_place)
+        if not same_junction and segment.pathway != segments[key].pathway:
+            continue
+        end = line[0 if last else -1]
+        mirrored = end * _MIRROR
+        near = min(np.linalg.norm(end - here), np.linalg.norm(mirrored - here))
+        if near <= _SAME_PLACE_MM:
+            found.append(other)
+    return found
 
 
 def _ending(
-    place: str,
-    key: str,
+    segment: Segment,
     last: bool,
     lines: Mapping[str, NDArray[np.float64]],
     segments: Mapping[str, Segment],
     parcels: Mapping[str, NDArray[np.int32]],
+    bundles: Mapping[str, Bundle],
 ) -> Ending:
+    place = segment.to_place if last else segment.from_place
+    partners = _meeting(segment.key, last, lines, segments)
+    here = lines[segment.key][-1 if last else 0]
+    ends = [
+        streamline[end]
+        for element, bundle in bundles.items()
+        if element.partition("@")[0] in partners
+        for streamline in bundle.streamlines
+        for end in (0, -1)
+    ]
+    through = np.array(ends, float).reshape(-1, 3)
+    through = through[np.linalg.norm(through - here, axis=1) <= _SAME_PLACE_MM + 2 * segment.radius_mm]
     if place.startswith("wm:"):
-        return Ending(np.empty((0, 3)))
+        return Ending(hands_over=bool(partners), through_mm=through)
     bare, _, asked = place.partition("@")
     side = {"": "left", "other": "right"}.get(asked, asked)
     element = f"{bare}@midline" if f"{bare}@midline" in parcels else f"{bare}@{side}"
     voxels = np.column_stack(np.unravel_index(parcels[element], TEMPLATE_GRID.shape))
-    return Ending(TEMPLATE_GRID.to_mm(voxels), not _hands_over(key, last, lines, segments))
+    return Ending(TEMPLATE_GRID.to_mm(voxels), bool(partners), through)
 
 
 def _both_sides(
@@ -140,11 +155,12 @@ def _both_sides(
     lines: Mapping[str, NDArray[np.float64]],
     segments: Mapping[str, Segment],
     parcels: Mapping[str, NDArray[np.int32]],
+    bundles: Mapping[str, Bundle],
 ) -> list[tuple[str, NDArray[np.float64], Bundle]]:
     key, line = segment.key, lines[segment.key]
     endings = (
-        _ending(segment.from_place, key, False, lines, segments, parcels),
-        _ending(segment.to_place, key, True, lines, segments, parcels),
+        _ending(segment, False, lines, segments, parcels, bundles),
+        _ending(segment, True, lines, segments, parcels, bundles),
     )
     rng = np.random.default_rng(zlib.crc32(key.encode()))
     if segment.sides == "midline":

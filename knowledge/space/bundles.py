@@ -2,24 +2,28 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
-from byway.knowledge.space.curves import arc_length, frames, resample
-from byway.knowledge.space.grid import TEMPLATE_GRID
-from byway.knowledge.space.template import template_volume
 from numpy.typing import NDArray
 from scipy.ndimage import gaussian_filter1d, map_coordinates, minimum_filter1d
 from scipy.optimize import linear_sum_assignment
 from scipy.spatial.distance import cdist
+
+from byway.knowledge.space.curves import arc_length, frames, resample
+from byway.knowledge.space.fans import reach_from
+from byway.knowledge.space.grid import TEMPLATE_GRID
+from byway.knowledge.space.template import template_volume
 
 __all__ = ["STREAMLINES", "Bundle", "Ending", "make_bundle"]
 
 STREAMLINES = 208
 _GOLDEN_ANGLE = np.pi * (3.0 - np.sqrt(5.0))
 _FRINGE = 1.6
-_FAN_MM = 20.0
-_NEAR_MM = 14.0
+_FAN_MM = 24.0
+_FAN_SHARE = 0.3
+_NEAR_COST = 22.0
+_NOWHERE = np.empty((0, 3))
 
 
 @dataclass(frozen=True)
@@ -29,15 +33,16 @@ class Ending:
     Parameters
     ----------
     targets_mm : (n, 3) float
-        Places where streamlines may end (voxel centres of a parcel, or ends of a bundle that hands over); empty when
-        the bundle ends free inside white matter.
-    core_fans : bool
-        Whether core streamlines too go to the targets; otherwise only the fringe does, and the core runs on into
-        the segment that takes over.
+        Voxel centres of the parcel that streamlines fan into; empty where the bundle ends inside white matter.
+    hands_over : bool
+        Whether another segment takes over here. Then the core runs on, and only the fringe fans into the parcel.
+    through_mm : (n, 3) float
+        Ends, at this place, of bundles that are already built and take over: the core meets them.
     """
 
-    targets_mm: NDArray[np.float64]
-    core_fans: bool = True
+    targets_mm: NDArray[np.float64] = field(default_factory=lambda: _NOWHERE)
+    hands_over: bool = False
+    through_mm: NDArray[np.float64] = field(default_factory=lambda: _NOWHERE)
 
 
 @dataclass(frozen=True)
@@ -64,25 +69,28 @@ def make_bundle(
     radius_mm : float
         Radius of the core; the fringe reaches 1.6 times as far.
     endings : pair of Ending
-        Where the streamlines end, at the first and at the last point of the core line.
+        What happens at the first and at the last point of the core line.
     rng : numpy Generator
         Source of the small deterministic irregularities.
     count : int
         Number of streamlines.
+
+    Returns
+    -------
+    Bundle
+        Streamlines with points at most 1 mm apart, in the direction of the core line.
     """
     distance = np.sqrt((np.arange(count) + 0.5) / count) * _FRINGE
-    angle = np.arange(count) * _GOLDEN_ANGLE
     core = distance <= 1.0
-    offsets = _offsets(core_line, distance * radius_mm, angle, rng)
-    lines = core_line[None] + offsets * _room(core_line, offsets)[..., None]
-    along = arc_length(core_line)
-    reach = min(_FAN_MM, 0.4 * along[-1])
-    for ending, from_end in ((endings[0], along), (endings[1], along[-1] - along)):
-        end = int(np.argmin(from_end))
-        blend = np.clip(1.0 - from_end / reach, 0.0, 1.0)
-        blend = blend**2 * (3.0 - 2.0 * blend)
-        shift = _shifts(lines[:, end], ending, core, rng)
-        lines = lines + blend[None, :, None] * shift[:, None, :]
+    offsets = _offsets(core_line, distance * radius_mm, np.arange(count) * _GOLDEN_ANGLE, rng)
+    offsets = offsets * _room(core_line, offsets)[..., None]
+    lines = list(core_line[None] + offsets)
+    for ending, backwards in ((endings[0], True), (endings[1], False)):
+        if backwards:
+            lines = [line[::-1] for line in lines]
+        lines = _finish(lines, core_line[::-1] if backwards else core_line, ending, core, rng)
+        if backwards:
+            lines = [line[::-1] for line in lines]
     return Bundle([resample(line).astype(np.float32) for line in lines], core)
 
 
@@ -90,6 +98,7 @@ def _offsets(
     core_line: NDArray[np.float64], distance_mm: NDArray[np.float64], angle: NDArray[np.float64],
     rng: np.random.Generator,
 ) -> NDArray[np.float64]:  # fmt: skip
+    """Offset of each streamline from the core line: round the golden angle, drifting slowly along the course."""
     _, first, second = frames(core_line)
     knots = max(3, round(len(core_line) / 25) + 1)
     wobble = rng.normal(0.0, 0.15, (2, len(distance_mm), knots))
@@ -99,7 +108,7 @@ def _offsets(
     turn = 2.0 * np.array([np.interp(at, grid, row) for row in wobble[1]])
     radius = distance_mm[:, None] * stretch
     theta = angle[:, None] + turn
-    return radius[..., None] * (np.cos(theta)[..., None] * first + np.sin(theta)[..., None] * second)
+    return np.asarray(radius[..., None] * (np.cos(theta)[..., None] * first + np.sin(theta)[..., None] * second))
 
 
 def _room(core_line: NDArray[np.float64], offsets: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -119,17 +128,80 @@ def _room(core_line: NDArray[np.float64], offsets: NDArray[np.float64]) -> NDArr
     return np.asarray(gaussian_filter1d(factor, 3.0, axis=1, mode="nearest"))
 
 
-def _shifts(
-    ends: NDArray[np.float64], ending: Ending, core: NDArray[np.bool_], rng: np.random.Generator
-) -> NDArray[np.float64]:
-    shift = np.zeros_like(ends)
-    fans = np.ones(len(ends), bool) if ending.core_fans else ~core
-    if not len(ending.targets_mm) or not fans.any():
-        return shift
-    centre = ends.mean(0)
-    away = np.linalg.norm(ending.targets_mm - centre, axis=1)
-    near = ending.targets_mm[away <= away.min() + _NEAR_MM]
-    chosen = near[rng.choice(len(near), int(fans.sum()), replace=len(near) < fans.sum())]
-    rows, columns = linear_sum_assignment(cdist(ends[fans], chosen, "sqeuclidean"))
-    shift[np.flatnonzero(fans)[rows]] = chosen[columns] - ends[fans][rows]
-    return shift
+def _finish(
+    lines: list[NDArray[np.float64]],
+    core_line: NDArray[np.float64],
+    ending: Ending,
+    core: NDArray[np.bool_],
+    rng: np.random.Generator,
+) -> list[NDArray[np.float64]]:
+    """Lead the last part of each line to its target: a parcel's voxel, or the end of a bundle that takes over."""
+    fanning = len(ending.targets_mm) > 0
+    through = ending.hands_over & (core | (not fanning))
+    lines = list(lines)
+    if len(ending.through_mm) and through.any():
+        which = np.flatnonzero(through)
+        ends = np.array([lines[i][-1] for i in which])
+        for i, goal in zip(which, _matched(ends, _drawn(ending.through_mm, len(which), rng)), strict=True):
+            lines[i] = _bent(lines[i], goal)
+    if fanning and not through.all():
+        which = np.flatnonzero(~through)
+        for i, line in zip(which, _fanned([lines[i] for i in which], core_line, ending.targets_mm, rng), strict=True):
+            lines[i] = line
+    return lines
+
+
+def _drawn(points: NDArray[np.float64], count: int, rng: np.random.Generator) -> NDArray[np.float64]:
+    if len(points) >= count:
+        return points[np.sort(rng.choice(len(points), count, replace=False))]
+    return points[np.arange(count) % len(points)]
+
+
+def _matched(ends: NDArray[np.float64], goals: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Goals in the order of the ends, paired so that the summed squared shift is least."""
+    rows, columns = linear_sum_assignment(cdist(ends, goals, "sqeuclidean"))
+    return goals[columns[np.argsort(rows)]]
+
+
+def _bent(line: NDArray[np.float64], goal: NDArray[np.float64]) -> NDArray[np.float64]:
+    """The line with its last 20 mm (at most 40 %) bent smoothly so that it ends at the goal."""
+    along = arc_length(line)
+    reach = min(20.0, 0.4 * along[-1])
+    share = np.clip(1.0 - (along[-1] - along) / reach, 0.0, 1.0)
+    share = share**2 * (3.0 - 2.0 * share)
+    return np.asarray(line + share[:, None] * (goal - line[-1]))
+
+
+def _fanned(
+    lines: list[NDArray[np.float64]],
+    core_line: NDArray[np.float64],
+    targets_mm: NDArray[np.float64],
+    rng: np.random.Generator,
+) -> list[NDArray[np.float64]]:
+    along = arc_length(core_line)
+    leave = int(np.searchsorted(along, along[-1] - min(_FAN_MM, _FAN_SHARE * along[-1])))
+    reach = reach_from(core_line[leave])
+    cost = reach.cost_to(targets_mm)
+    near = cost <= cost.min() + _NEAR_COST if np.isfinite(cost).any() else np.ones(len(cost), bool)
+    goals = targets_mm[near]
+    goals = goals[rng.choice(len(goals), len(lines), replace=len(goals) < len(lines))]
+    goals = _matched(np.array([line[-1] for line in lines]), goals)
+    finished = []
+    for line, goal in zip(lines, goals, strict=True):
+        way = reach.way_to(goal)
+        offset = line[leave] - core_line[leave]
+        fade = np.linspace(1.0, 0.0, len(way))
+        fade = fade**2 * (3.0 - 2.0 * fade)
+        joined = np.concatenate([line[:leave], way + fade[:, None] * offset])
+        finished.append(_eased(joined, leave))
+    return finished
+
+
+def _eased(line: NDArray[np.float64], at: int) -> NDArray[np.float64]:
+    """Smooth the bend where the fan leaves the trunk."""
+    first, last = max(0, at - 12), min(len(line), at + 25)
+    eased = line.copy()
+    part = line[first:last]
+    width = np.hanning(len(part) + 2)[1:-1, None]
+    eased[first:last] = part + width * (gaussian_filter1d(part, 5.0, axis=0, mode="nearest") - part)
+    return eased

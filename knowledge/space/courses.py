@@ -9,13 +9,14 @@ from __future__ import annotations
 import itertools
 
 import numpy as np
+from numpy.typing import NDArray
+from scipy.sparse.csgraph import dijkstra
+from scipy.spatial import cKDTree
+
 from byway.knowledge.space.curves import resample, smooth, spline_through
 from byway.knowledge.space.front import VoxelGraph, voxel_graph
 from byway.knowledge.space.grid import TEMPLATE_GRID
 from byway.knowledge.space.template import template_volume
-from numpy.typing import NDArray
-from scipy.sparse.csgraph import dijkstra
-from scipy.spatial import cKDTree
 
 __all__ = ["is_mirror_image_of_itself", "pull_course"]
 

@@ -10,8 +10,9 @@ from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
-from byway.knowledge.space.grid import Grid
 from numpy.typing import NDArray
+
+from byway.knowledge.space.grid import Grid
 
 __all__ = ["Geometry"]
 

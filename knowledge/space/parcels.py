@@ -10,12 +10,13 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 import numpy as np
+from numpy.typing import NDArray
+from scipy import ndimage
+
 from byway.knowledge.graph.records import Region
 from byway.knowledge.space.front import voxel_graph
 from byway.knowledge.space.grid import TEMPLATE_GRID
 from byway.knowledge.space.template import brain_mask, template_volume
-from numpy.typing import NDArray
-from scipy import ndimage
 
 __all__ = ["grow_parcels", "mirror_flat"]
 

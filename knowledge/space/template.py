@@ -14,9 +14,10 @@ from typing import Any, Literal, cast
 
 import nibabel as nib
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import Fault, ImageError
 from byway.knowledge.space.grid import TEMPLATE_GRID
-from numpy.typing import NDArray
 
 __all__ = ["Tissue", "brain_mask", "template_files", "template_hash", "template_volume"]
 
