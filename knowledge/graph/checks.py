@@ -13,12 +13,13 @@ from collections import Counter
 from collections.abc import Iterable, Mapping
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import FaultReport, nearest
 from byway.knowledge.graph.content import PLURALS, Content, Kind
 from byway.knowledge.graph.joins import check_routes
 from byway.knowledge.graph.records import Claim
 from byway.knowledge.graph.references import split_reference
-from numpy.typing import NDArray
 
 __all__ = ["NORMS", "RULES", "check_graph"]
 

@@ -7,13 +7,14 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
+from pydantic import ValidationError
+
 import byway.knowledge.curated
 from byway.knowledge.faults import Fault, FaultReport, GraphError
 from byway.knowledge.graph.content import KINDS, PLURALS, Content, Kind, Origin
 from byway.knowledge.graph.grammar import Place, record_faults, to_record
 from byway.knowledge.graph.records import Record
 from byway.knowledge.yamltext import Lined, read_yaml
-from pydantic import ValidationError
 
 __all__ = ["Block", "blocks_in", "curated_folder", "read_curated", "record_of"]
 

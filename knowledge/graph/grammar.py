@@ -10,6 +10,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
+from pydantic import BaseModel, ValidationError
+
 from byway.knowledge.faults import Fault, nearest
 from byway.knowledge.graph.content import Kind
 from byway.knowledge.graph.records import (
@@ -24,7 +26,6 @@ from byway.knowledge.graph.records import (
     Sign,
     Source,
 )
-from pydantic import BaseModel, ValidationError
 
 __all__ = ["MODELS", "Place", "fields_of", "record_faults", "to_block", "to_record"]
 

@@ -10,6 +10,7 @@ from functools import cached_property
 from typing import TypeVar
 
 import networkx as nx
+
 from byway.knowledge.faults import Fault, GraphError, nearest
 from byway.knowledge.graph.content import KINDS, Content, Kind, Origin, kind_from
 from byway.knowledge.graph.records import Claim, Dependence, Record, Region, Segment, Side, Source

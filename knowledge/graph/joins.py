@@ -7,12 +7,13 @@ import math
 from collections.abc import Mapping
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import FaultReport, GraphError
 from byway.knowledge.graph.content import Content
 from byway.knowledge.graph.networks import function_network
 from byway.knowledge.graph.records import Function, Point
 from byway.knowledge.graph.references import Hemisphere, copy_sides, resolve_reference, resolved_chains, split_reference
-from numpy.typing import NDArray
 
 __all__ = ["HANDOVER_MM", "REACH_MM", "check_routes"]
 
@@ -97,7 +98,7 @@ def _check_chains(
     broken: list[tuple[str, str]] = []
     chains = resolved_chains(graph, function, sides)
     for key, _, ids in chains:
-        if split_reference(ids[0])[0] in graph.segments and len(ids) == 1:
+        if len(ids) == 1 and _joins_regions_only(graph, ids[0]):
             report.add("chain-order", where, f"route {key} is a lone segment", "a region", "add the regions it joins")
         for before, after in itertools.pairwise(ids):
             if {split_reference(before)[0], split_reference(after)[0]} <= set(graph.regions):
@@ -109,6 +110,12 @@ def _check_chains(
     for key, fault in broken:
         grave = len(broken) == len(chains)
         report.add("route-join", where, f"route {key}: {fault}", remedy="mend the chain or the course", grave=grave)
+
+
+def _joins_regions_only(graph: Content, element: str) -> bool:
+    """Whether an element is a segment between two regions; one that leads out of the graph may be a route alone."""
+    segment = graph.segments.get(split_reference(element)[0])
+    return segment is not None and not (segment.from_place.startswith("wm:") or segment.to_place.startswith("wm:"))
 
 
 def _broken_joint(ids: tuple[str, ...], graph: Content, places: _Places) -> str:

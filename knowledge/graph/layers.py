@@ -9,13 +9,14 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 from typing import Any
 
+from pydantic import ValidationError
+
 from byway.knowledge.faults import FaultReport, GraphError, nearest
 from byway.knowledge.graph.content import KINDS, Content, Dispute, Kind, Origin
 from byway.knowledge.graph.emit import emit_yaml
 from byway.knowledge.graph.grammar import record_faults, to_block, to_record
 from byway.knowledge.graph.overlays import Entry, Overlay
 from byway.knowledge.graph.records import Pathway, Record
-from pydantic import ValidationError
 
 __all__ = ["Change", "Conflict", "apply_overlays", "clashes", "diff"]
 

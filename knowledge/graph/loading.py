@@ -12,7 +12,8 @@ from byway.knowledge.graph.content import Content
 from byway.knowledge.graph.files import read_curated
 from byway.knowledge.graph.graph import Graph, graph_from
 from byway.knowledge.graph.layers import apply_overlays
-from byway.knowledge.graph.overlays import Overlay, read_overlay
+from byway.knowledge.graph.overlay_files import read_overlay
+from byway.knowledge.graph.overlays import Overlay
 
 __all__ = ["base_content", "graph_with", "load_graph"]
 

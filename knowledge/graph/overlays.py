@@ -25,23 +25,32 @@ The blocks follow the grammar of the curated folders; a segment is a block of it
 from __future__ import annotations
 
 import datetime
-from collections.abc import Mapping
-from dataclasses import dataclass, field
-from pathlib import Path
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, field, replace
 from typing import Any, Literal, get_args
 
 from byway.knowledge.faults import FaultReport, GraphError, nearest
 from byway.knowledge.graph.content import KINDS, PLURALS, Kind, Origin, kind_from
 from byway.knowledge.graph.emit import emit_yaml
 from byway.knowledge.graph.grammar import Place
-from byway.knowledge.yamltext import Lined, parse_yaml, read_yaml
+from byway.knowledge.yamltext import Lined, parse_yaml
 
-__all__ = ["ACTIONS", "Action", "Entry", "Overlay", "Slot", "overlay_text", "parse_overlay", "read_overlay"]
+__all__ = [
+    "ACTIONS",
+    "Action",
+    "Entry",
+    "Overlay",
+    "Slot",
+    "blocks",
+    "entries_in",
+    "overlay_from",
+    "overlay_text",
+    "parse_overlay",
+]
 
 Action = Literal["add", "change", "retire", "dispute"]
 ACTIONS: tuple[Action, ...] = get_args(Action)
 Slot = tuple[Action, Kind, str]
-HEADER = "overlay.yaml"
 META = ("author", "date", "reason")
 
 
@@ -96,12 +105,17 @@ class Entry:
 
 @dataclass(frozen=True)
 class Overlay:
-    """A named set of entries by one author (unless an entry says otherwise), in the order of their slots."""
+    """A named set of entries by one author (unless an entry says otherwise), in the order of their slots.
+
+    ``texts`` remembers the files that it was read from (name to text), so that an overlay brought back to what it was
+    is written back byte by byte, comments and all; no part of equality.
+    """
 
     name: str
     author: str
     date: str
     entries: tuple[Entry, ...] = ()
+    texts: Mapping[str, str] = field(default_factory=dict, compare=False, repr=False)
 
     def __post_init__(self) -> None:
         order = sorted(
@@ -116,7 +130,7 @@ class Overlay:
     def with_entry(self, slot: Slot, entry: Entry | None) -> Overlay:
         """This overlay with one slot filled, refilled or (None) emptied."""
         kept = tuple(each for each in self.entries if each.slot != slot)
-        return Overlay(self.name, self.author, self.date, kept + ((entry,) if entry is not None else ()))
+        return replace(self, entries=kept + ((entry,) if entry is not None else ()))
 
     @property
     def used(self) -> tuple[Entry, ...]:
@@ -131,15 +145,7 @@ class Overlay:
 
 def overlay_text(overlay: Overlay) -> str:
     """The overlay as YAML; equal overlays give equal bytes, and reading it back gives an equal overlay."""
-    return emit_yaml(
-        {
-            "name": overlay.name,
-            "author": overlay.author,
-            "date": overlay.date,
-            **_blocks(overlay.used),
-            **({"drafts": _blocks(overlay.drafts)} if overlay.drafts else {}),
-        }
-    )
+    return emit_yaml({"name": overlay.name, "author": overlay.author, "date": overlay.date, **blocks(overlay.entries)})
 
 
 def parse_overlay(text: str, name: str = "overlay") -> Overlay:
@@ -150,38 +156,32 @@ def parse_overlay(text: str, name: str = "overlay") -> Overlay:
     GraphError
         Holding every fault of its form. Whether it fits a graph is seen when it is applied.
     """
-    return _overlay([parse_yaml(text, name, GraphError)])
+    return overlay_from([parse_yaml(text, name, GraphError)])
 
 
-def read_overlay(path: Path | str) -> Overlay:
-    """An overlay from a YAML file or a folder of them.
-
-    Raises
-    ------
-    GraphError
-        No such file, larger than 5 MB, no plain YAML (tags, anchors, repeated keys), or blocks out of place.
-    """
-    path = Path(path)
-    if not path.is_dir():
-        return _overlay([read_yaml(path, GraphError)])
-    files = sorted(path.rglob("*.yaml"), key=lambda file: (file != path / HEADER, file.as_posix()))
-    if not files or files[0] != path / HEADER:
-        report = FaultReport()
-        report.add("overlay-form", str(path), f"no {HEADER}", "a folder with the overlay's name, author and date in it")
-        report.raise_if_grave(GraphError)
-    return _overlay([read_yaml(file, GraphError, name=file.relative_to(path.parent).as_posix()) for file in files])
+def blocks(entries: Iterable[Entry]) -> dict[str, Any]:
+    """Entries as nested mappings, as they stand in text: action, kind, key; drafts last."""
+    entries = list(entries)
+    nested = _nested(entry for entry in entries if not entry.draft)
+    drafts = _nested(entry for entry in entries if entry.draft)
+    return {**nested, **({"drafts": drafts} if drafts else {})}
 
 
-def _blocks(entries: tuple[Entry, ...]) -> dict[str, Any]:
-    """Entries as nested mappings: action, kind, key."""
+def _nested(entries: Iterable[Entry]) -> dict[str, Any]:
     nested: dict[str, dict[str, dict[str, Any]]] = {}
     for entry in entries:
         nested.setdefault(entry.action, {}).setdefault(PLURALS[entry.kind], {})[entry.key] = entry.block()
     return nested
 
 
-def _overlay(texts: list[Lined]) -> Overlay:
-    """One overlay from its texts, the first of which holds the header."""
+def overlay_from(texts: Sequence[Lined]) -> Overlay:
+    """One overlay from its texts, the first of which holds name, author and date.
+
+    Raises
+    ------
+    GraphError
+        As :func:`parse_overlay`.
+    """
     report = FaultReport()
     header = texts[0]
     values = header.value if isinstance(header.value, Mapping) else {}
@@ -197,7 +197,7 @@ def _overlay(texts: list[Lined]) -> Overlay:
         report.add("overlay-form", header.where(("name",)), "the name 'base'", "a name of its own")
     entries: dict[Slot, Entry] = {}
     for read in texts:
-        for entry in _entries(read, words["name"], header is read, report):
+        for entry in entries_in(read, words["name"], header is read, report):
             first = entries.get(entry.slot)
             if first is None:
                 entries[entry.slot] = entry
@@ -209,7 +209,8 @@ def _overlay(texts: list[Lined]) -> Overlay:
     return Overlay(words["name"], words["author"], words["date"], tuple(entries.values()))
 
 
-def _entries(read: Lined, layer: str, is_header: bool, report: FaultReport) -> list[Entry]:
+def entries_in(read: Lined, layer: str, is_header: bool, report: FaultReport) -> list[Entry]:
+    """Entries of one text; faults of form go to the report."""
     top = read.value if read.value is not None else {}
     if not isinstance(top, Mapping):
         report.add(
