@@ -118,6 +118,14 @@ class Case:
         raise CaseError(Fault("unknown-sign", where, f"no sign {word!r}", "a sign key or an HPO id",
                               nearest(word, [*graph.signs, *by_hpo])))  # fmt: skip
 
+    def at_visit(self, position: int) -> Case:
+        """The case as it stood at a later visit (from 0): its stage and findings, and its lesion if drawn anew."""
+        visit = self.spec.visits[position]
+        changes = {"stage": visit.stage, "findings": visit.findings, "visits": ()}
+        if visit.lesion is not None:
+            changes["lesion"] = visit.lesion
+        return Case(self.spec.model_copy(update=changes), self.folder)
+
     def with_spec(self, **changes: object) -> Case:
         """A new case with fields of case.yaml changed, checked like a file."""
         data = {**self.spec.model_dump(), **changes}

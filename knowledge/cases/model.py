@@ -19,6 +19,7 @@ __all__ = [
     "PersonSpec",
     "ScanSpec",
     "ShapeSpec",
+    "VisitSpec",
     "case_schema",
 ]
 
@@ -112,6 +113,15 @@ class ScanSpec(_Block):
     sequence: str = "unknown"
 
 
+class VisitSpec(_Block):
+    """A later time point: what was found then, and the lesion then where it was drawn anew."""
+
+    date: Annotated[str, Field(min_length=1, max_length=40)]
+    stage: Literal["acute", "subacute", "chronic"]
+    lesion: LesionSpec | None = None
+    findings: tuple[FindingSpec, ...] = ()
+
+
 class CaseFile(_Block):
     """case.yaml, whole."""
 
@@ -135,6 +145,7 @@ class CaseFile(_Block):
     lesion: LesionSpec = LesionSpec()
     scans: tuple[ScanSpec, ...] = ()
     findings: tuple[FindingSpec, ...] = ()
+    visits: tuple[VisitSpec, ...] = ()
     asymmetries: tuple[Asymmetry, ...] = ()
     overlays: tuple[str, ...] = ()
     priors: dict[str, float | dict[str, float]] = {}
