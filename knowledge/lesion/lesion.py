@@ -7,9 +7,10 @@ from functools import cached_property
 from typing import Literal
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.space.grid import TEMPLATE_GRID
-from numpy.typing import NDArray
 
 __all__ = ["Compartment", "CompartmentKind", "Lesion"]
 

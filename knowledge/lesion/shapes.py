@@ -9,9 +9,10 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.space.grid import TEMPLATE_GRID, Grid
-from numpy.typing import NDArray
 
 __all__ = ["ellipsoid_mask", "sphere_mask"]
 
