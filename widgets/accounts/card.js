@@ -18,8 +18,9 @@ function ledger(account, words) {
     const path = `accounts/${account.index}/ledger/${row.sign}@${row.side}`;
     const width = (Math.abs(row.vs_cortical || 0) / most) * 50;
     const left = row.vs_cortical >= 0 ? 50 : 50 - width;
-    return h("tr", {}, h("th", { scope: "row" }, signName(row, words)), h("td", {}, grade(row.found, words)),
-      h("td", { class: "bw-right" }, number(`${path}/p_sign`, row.p_sign, percent(row.p_sign))),
+    const seen = row.found ? grade(row.found, words) : null;
+    return h("tr", { "data-row": row.row }, h("th", { scope: "row" }, words[`ledger_${row.row}`] || signName(row, words)), h("td", {}, seen),
+      h("td", { class: "bw-right" }, seen ? number(`${path}/p_sign`, row.p_sign, percent(row.p_sign)) : null),
       h("td", { class: "bw-right" }, number(`${path}/loglik`, row.loglik, fixed(row.loglik, 2))),
       h("td", { class: "bw-balance-cell" }, h("span", { class: "bw-balance", "aria-hidden": "true" },
         h("i", { class: row.vs_cortical >= 0 ? "bw-for" : "bw-against", style: `left:${left}%;width:${width}%` }))),
@@ -83,8 +84,9 @@ export function makeCard(account, words, select, act) {
   const change = part("counterfactuals", words, words.counterfactuals_hint);
   const pro = part("claims_for", words);
   const con = part("claims_against", words);
+  const spared = part("sparing", words, words.sparing_hint);
   const notes = h("ul", { class: "bw-cautions" });
-  body.append(elements, fit, neck, notes, h("div", { class: "bw-parts" }, book, change, pro, con));
+  body.append(elements, fit, neck, notes, h("div", { class: "bw-parts" }, book, change, spared, pro, con));
   if (act) body.append(act(account));
 
   function open(yes) {
@@ -111,12 +113,14 @@ export function makeCard(account, words, select, act) {
       column("explains", words.explains, yes, words, words.explains_none),
       column("leaves", words.leaves, left, words, words.leaves_none),
       column("absent", words.predicts_absent, missing, words, words.predicts_absent_none)]);
-    redo(neck, [a.bottlenecks, a.index], ([all]) => all.map((b, i) => h("p", {}, h("span", { class: "bw-neck-mark", "aria-hidden": "true" }),
-      `${b.words} `, h("span", { class: "bw-soft" }, `${words.capacity} `,
-        number(`${path}/bottlenecks/${i}/capacity`, b.capacity, percent(b.capacity))))));
+    redo(neck, [a.bottlenecks, a.index], ([all]) => all.map((b) => h("p", {}, h("span", { class: "bw-neck-mark", "aria-hidden": "true" }),
+      `${b.words}. `, h("span", { class: "bw-soft bw-nowrap" }, `${words.capacity} `,
+        number(`${path}/bottlenecks/${b.function}/capacity`, b.capacity, percent(b.capacity))))));
     redo(book.body, [a.ledger, a.index], () => [ledger(a, words)]);
     redo(change.body, [a.counterfactuals, a.index], () => [counterfactuals(a, words, select)]);
     change.hidden = a.counterfactuals.length === 0;
+    redo(spared.body, a.sparing, (all) => [h("ul", { class: "bw-plain-list" }, all.map((text) => h("li", {}, text)))]);
+    spared.hidden = a.sparing.length === 0;
     redo(pro.body, a.claims_for, (claims) => [claimList(claims, words)]);
     redo(con.body, a.claims_against, (claims) => [claims.length ? claimList(claims, words) : h("p", { class: "bw-soft" }, words.claims_against_none)]);
     say(pro.count, a.claims_for.length);

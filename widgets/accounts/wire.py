@@ -10,9 +10,8 @@ import pandas as pd
 from byway.widgets.panel import element_words
 from byway.widgets.wire import plain
 
-__all__ = ["account_key", "claims_of", "told_of"]
+__all__ = ["claims_of", "told_of"]
 
-PLAIN_KIND = "cortical_damage"
 MOST_ELEMENTS = 8
 MOST_CHANGES = 12
 MOST_NEXT = 8
@@ -38,29 +37,28 @@ def told_of(explanation: Any, graph: Any) -> dict[str, Any]:
     }
 
 
-def account_key(account: Any) -> str:
-    """What tells an account from the others, whatever its rank: its departures, or its kind and title."""
-    return str(getattr(account, "key", None) or f"{account.kind}: {account.title}")
-
-
 def _account(account: Any, index: int, graph: Any) -> dict[str, Any]:
     ledger = _rows(account.ledger)
     return {
-        "key": account_key(account),
+        "key": account.key,
         "index": index,
         "title": account.title,
         "kind": account.kind,
-        "is_plain": account.kind == PLAIN_KIND,
+        "is_plain": account.is_plain,
+        "prior": account.prior,
         "posterior": account.posterior,
         "words": account.words,
         "odds_vs_cortical": account.odds_vs_cortical,
         "elements": [element_words(graph, element) for element in account.elements[:MOST_ELEMENTS]],
-        "explains": _signs(account.explains, ledger, graph),
-        "leaves": _signs(account.leaves, ledger, graph),
-        "predicts_absent": _signs(account.predicts_absent, ledger, graph),
+        "explains": [dict(vars(sign)) for sign in account.explains],
+        "leaves": [dict(vars(sign)) for sign in account.leaves],
+        "predicts_absent": [dict(vars(sign)) for sign in account.predicts_absent],
+        "sparing": [sparing.words for sparing in account.sparing],
         "ledger": ledger,
         "ledger_sum": {name: sum(row[name] for row in ledger) for name in ("loglik", "vs_cortical")},
-        "bottlenecks": [{"words": b.words, "capacity": b.capacity} for b in account.bottlenecks],
+        "bottlenecks": [
+            {name: row[name] for name in ("function", "capacity", "words")} for row in _rows(account.bottlenecks)
+        ],
         "counterfactuals": _changes(account.counterfactuals, graph),
         "claims_for": claims_of(account.claims_for, graph),
         "claims_against": claims_of(account.claims_against, graph),
@@ -76,21 +74,11 @@ def _sign_name(sign: str, graph: Any) -> str:
     return str(graph.signs[sign].name) if graph is not None and sign in graph.signs else sign
 
 
-def _signs(sign_ids: Iterable[str], ledger: list[dict[str, Any]], graph: Any) -> list[dict[str, Any]]:
-    found = {f"{row['sign']}@{row['side']}": row["found"] for row in ledger}
-    rows = []
-    for sign_id in sign_ids:
-        sign, _, side = sign_id.rpartition("@")
-        rows.append({"sign": sign, "side": side, "name": _sign_name(sign, graph), "found": found.get(sign_id)})
-    return rows
-
-
 def _changes(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:
     rows = []
     for row in _rows(table)[:MOST_CHANGES]:
-        sign, _, side = str(row["sign"]).rpartition("@")
-        rows.append({"element": element_words(graph, row["element"]), "sign": sign, "side": side,
-                     "name": _sign_name(sign, graph), "change": row["change"]})  # fmt: skip
+        rows.append({"element": element_words(graph, row["element"]), "sign": row["sign"], "side": row["side"],
+                     "name": _sign_name(row["sign"], graph), "change": row["change"]})  # fmt: skip
     return rows
 
 

@@ -27,7 +27,7 @@ class FindingsPanel(Panel):
     _css = load_css("front/panel.css", "findings/view.css")
     sections: ClassVar[tuple[str, ...]] = ("findings",)
 
-    signs = t.List(t.Any()).tag(sync=True)
+    signs: Any = t.List().tag(sync=True)
     findings = t.Dict().tag(sync=True)
     expected = t.Dict().tag(sync=True)
 

@@ -30,7 +30,7 @@ class HitsPanel(Panel):
     _css = load_css("front/panel.css", "hits/view.css")
     sections: ClassVar[tuple[str, ...]] = ("hits",)
 
-    elements = t.List(t.Any()).tag(sync=True)
+    elements: Any = t.List().tag(sync=True)
     values = t.Bytes().tag(sync=True)
     uncharted_share = t.Float(None, allow_none=True).tag(sync=True)
 
