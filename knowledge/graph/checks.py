@@ -224,6 +224,7 @@ def _check_norms(graph: Content, report: FaultReport) -> None:
         for member in members:
             if member not in known:
                 report.add("missing-norm", graph.where("norm", key), f"no member {member!r}", remedy="add it")
+    _check_spreads(graph, report)
     for norm in graph.norms.values():
         where = graph.where("norm", norm.key)
         values = norm.value if isinstance(norm.value, dict) else {"value": norm.value}
@@ -235,6 +236,18 @@ def _check_norms(graph: Content, report: FaultReport) -> None:
                     )
         if norm.key in EXCLUSIVE and not math.isclose(sum(values.values()), 1, abs_tol=1e-6):
             report.add("norm-value", where, f"members sum to {sum(values.values()):g}", "1", "they exclude each other")
+
+
+def _check_spreads(graph: Content, report: FaultReport) -> None:
+    """Every kind and variability of a segment has a between-subject spread."""
+    norm = graph.norms.get("spread_mm")
+    known = norm.value if norm and isinstance(norm.value, dict) else {}
+    needed = {region.tissue for region in graph.regions.values()}
+    for segment in graph.segments.values():
+        if segment.pathway in graph.pathways:
+            needed.add(f"{graph.pathways[segment.pathway].kind}_{segment.variability}")
+    for member in sorted(needed - set(known) - set(NORMS["spread_mm"])):
+        report.add("missing-norm", graph.where("norm", "spread_mm"), f"no member {member!r}", remedy="add it")
 
 
 def _check_claims(graph: Content, report: FaultReport) -> None:

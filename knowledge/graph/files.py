@@ -16,7 +16,25 @@ from byway.knowledge.graph.grammar import Place, record_faults, to_record
 from byway.knowledge.graph.records import Record
 from byway.knowledge.yamltext import Lined, read_yaml
 
-__all__ = ["Block", "blocks_in", "curated_folder", "read_curated", "record_of"]
+__all__ = ["FILE_RULES", "Block", "blocks_in", "curated_folder", "read_curated", "record_of"]
+
+# Every rule of reading: its name in faults, and what it demands. The first ones are those of byway.knowledge.yamltext.
+FILE_RULES: dict[str, str] = {
+    "yaml": "the text is plain YAML, one document",
+    "yaml-mark": "no tags, no anchors, no aliases",
+    "yaml-key": "keys are plain words",
+    "too-large": "a file holds at most 5 MB",
+    "encoding": "text is UTF-8",
+    "unreadable": "the file or folder is there",
+    "duplicate": "a key stands once",
+    "not-a-mapping": "keys stand where keys belong",
+    "missing-field": "required fields are there",
+    "unknown-field": "fields are those of the kind",
+    "unknown-word": "a field with a fixed choice holds one of the choices",
+    "out-of-range": "numbers lie in their range",
+    "too-few": "lists that need a member have one",
+    "type": "numbers are numbers, lists are lists",
+}
 
 
 @dataclass(frozen=True)

@@ -13,6 +13,11 @@ A :class:`FunctionNetwork` numbers its elements from 0. ``elements[i]`` is an el
 ``key@midline``): regions and segments alike are *nodes*; ``links`` join consecutive nodes of a route. Elements stand
 in topological order, so every link ``(i, j)`` has ``i < j``. Each of ``routes`` is a tuple of element numbers from
 its source to its sink.
+
+An element may be where one route ends (a region that serves the function by itself, say) and be passed by another.
+What can leave there is then only the load of the routes that end there: ``sink_loads``, and ``source_loads`` for what
+can enter, are usual loads of the way in and the way out, to be reckoned with like those of links. Without them a
+region's own small share would let the whole function bypass a cut further on.
 """
 
 from __future__ import annotations
@@ -54,6 +59,8 @@ class FunctionNetwork:
         Distinct consecutive pairs of the routes, ``i < j``.
     element_loads, link_loads : tuple of float
         Sum of the loads of the routes through each element and each link, in [0, 1].
+    source_loads, sink_loads : tuple of float
+        For every element, sum of the loads of the routes that start there, and that end there; 0 elsewhere.
     """
 
     copy_id: str
@@ -67,6 +74,8 @@ class FunctionNetwork:
     links: tuple[tuple[int, int], ...]
     element_loads: tuple[float, ...]
     link_loads: tuple[float, ...]
+    source_loads: tuple[float, ...] = ()
+    sink_loads: tuple[float, ...] = ()
 
     def with_loads(self, route_loads: Sequence[float]) -> FunctionNetwork:
         """The same network for a person who leans on its routes differently.
@@ -86,15 +95,22 @@ class FunctionNetwork:
             raise GraphError(
                 Fault("load-sum", self.copy_id, f"route loads {loads}", f"{len(self.routes)} loads that sum to 1")
             )
-        element_loads = [0.0] * len(self.elements)
+        through, enters, leaves = ([0.0] * len(self.elements) for _ in range(3))
         link_loads = dict.fromkeys(self.links, 0.0)
         for route, load in zip(self.routes, loads, strict=True):
+            enters[route[0]] += load
+            leaves[route[-1]] += load
             for element in route:
-                element_loads[element] += load
+                through[element] += load
             for link in itertools.pairwise(route):
                 link_loads[link] += load
         return replace(
-            self, route_loads=loads, element_loads=tuple(element_loads), link_loads=tuple(link_loads.values())
+            self,
+            route_loads=loads,
+            element_loads=tuple(through),
+            link_loads=tuple(link_loads.values()),
+            source_loads=tuple(enters),
+            sink_loads=tuple(leaves),
         )
 
 

@@ -37,6 +37,7 @@ from byway.knowledge.yamltext import Lined, parse_yaml
 
 __all__ = [
     "ACTIONS",
+    "OVERLAY_RULES",
     "Action",
     "Entry",
     "Overlay",
@@ -50,6 +51,13 @@ __all__ = [
 
 Action = Literal["add", "change", "retire", "dispute"]
 ACTIONS: tuple[Action, ...] = get_args(Action)
+# Rules of overlays beside those of reading and of the graph that they make.
+OVERLAY_RULES: dict[str, str] = {
+    "overlay-form": "an overlay has a name of its own, an author and ISO dates",
+    "no-reason": "whoever retires or disputes says why",
+    "edit": "an edit finds the overlay as it was made for",
+    "unwritable": "the place for the overlay can be written",
+}
 Slot = tuple[Action, Kind, str]
 META = ("author", "date", "reason")
 
