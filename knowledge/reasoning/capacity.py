@@ -15,9 +15,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import Fault, GraphError
 from byway.knowledge.graph.networks import FunctionNetwork
-from numpy.typing import NDArray
 
 __all__ = ["MAX_CUTS", "Block", "CutTable", "capacities", "cut_table"]
 

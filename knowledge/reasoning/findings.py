@@ -7,9 +7,10 @@ from dataclasses import dataclass
 from typing import Literal, get_args
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, FaultReport, nearest
 from byway.knowledge.graph.graph import Graph
-from numpy.typing import NDArray
 
 __all__ = ["GRADES", "BodySide", "Finding", "FoundGrade", "check_findings", "reading_matrix"]
 

@@ -11,12 +11,13 @@ from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.reasoning.findings import Finding
 from byway.knowledge.reasoning.prepared import Prepared
 from byway.knowledge.reasoning.scenarios import AXES, AxisPriors, Scenario, enumerate_scenarios, prior_vector
 from byway.knowledge.reasoning.signs import LossCache, SignModel, outside_tails
 from byway.knowledge.reasoning.states import STATES, DamageStates, damage_states
-from numpy.typing import NDArray
 
 __all__ = ["SLIP", "Reckoning", "log_mean", "reckon", "weigh", "with_findings"]
 

@@ -7,6 +7,8 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import Fault, GraphError
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.networks import FunctionNetwork, function_networks
@@ -15,7 +17,6 @@ from byway.knowledge.reasoning.capacity import CutTable, cut_table
 from byway.knowledge.reasoning.remote import RemoteModel, remote_model
 from byway.knowledge.reasoning.scenarios import AXES, leaning
 from byway.knowledge.reasoning.signs import SignModel, sign_models
-from numpy.typing import NDArray
 
 __all__ = ["CopyTable", "Prepared", "prepare"]
 

@@ -13,8 +13,9 @@ from dataclasses import dataclass
 import networkx as nx
 import numpy as np
 import pandas as pd
-from byway.knowledge.graph.graph import Graph
 from numpy.typing import NDArray
+
+from byway.knowledge.graph.graph import Graph
 
 __all__ = ["Connection", "RemoteModel", "remote_model", "remote_table"]
 

@@ -11,8 +11,9 @@ from dataclasses import dataclass
 
 import networkx as nx
 import numpy as np
-from byway.knowledge.graph.networks import FunctionNetwork
 from numpy.typing import NDArray
+
+from byway.knowledge.graph.networks import FunctionNetwork
 
 __all__ = ["RouteFlow", "flow_graph", "route_flows"]
 

@@ -8,11 +8,12 @@ from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.networks import FunctionNetwork
 from byway.knowledge.graph.references import Hemisphere
-from numpy.typing import NDArray
 
 __all__ = [
     "AXES",

@@ -11,10 +11,11 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.references import Hemisphere, other_side, split_reference
 from byway.knowledge.reasoning.findings import GRADES, Finding, reading_matrix
-from numpy.typing import NDArray
 
 __all__ = ["WIDTH", "LossCache", "SignModel", "Term", "combined_capacity", "loss", "outside_tails", "sign_models"]
 
@@ -73,13 +74,16 @@ class SignModel:
             if lost is not None:
                 spared: Array = np.float32(1.0) - np.float32(term.weight) * lost
                 absent = spared if absent is None else absent * spared
-        return 1.0 - intact if absent is None else np.float32(1.0) - np.float32(intact) * absent
+        if absent is None:
+            return 1.0 - intact
+        there: Array = np.float32(1.0) - np.float32(intact) * absent
+        return there
 
-    def found(self, presence: Array | float) -> Array | float:
+    def found(self, presence: NDArray[np.float64]) -> NDArray[np.float64]:
         """P(test finds the sign) from P(sign there at all)."""
         return (1.0 - self.specificity) + presence * (self.sensitivity + self.specificity - 1.0)
 
-    def likelihood(self, finding: Finding, tails: tuple[Array | float, ...], lapse: float) -> Array | float:
+    def likelihood(self, finding: Finding, tails: tuple[Array | float, ...], lapse: float) -> Array:
         """P(finding | P(grade or worse)), in (0, 1).
 
         Parameters
@@ -90,11 +94,12 @@ class SignModel:
             Probability that the finding says nothing; then absent and present are equally likely.
         """
         column = reading_matrix(self.sensitivity, self.specificity)[:, GRADES.index(finding.grade)]
-        told: Array | float = float(column[0])
+        told = np.asarray(column[0], np.float32)
         for grade, tail in enumerate(tails):
             told = told + tail * np.float32(column[grade + 1] - column[grade])
         blank = 1.0 / 6.0 if finding.present else 0.5
-        return (1.0 - lapse) * told + lapse * blank
+        probability: Array = np.float32(1.0 - lapse) * told + np.float32(lapse * blank)
+        return probability
 
 
 def loss(capacity: NDArray[np.floating], threshold: float) -> Array:

@@ -7,10 +7,11 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.reasoning.prepared import CopyTable, Prepared
 from byway.knowledge.reasoning.scenarios import AXES, Scenario
-from numpy.typing import NDArray
 
 __all__ = ["STATES", "STATE_AXES", "TOUCHED", "DamageStates", "damage_states", "state_number"]
 

@@ -1,0 +1,83 @@
+"""Words that reasoning puts together: the verbal scale, titles, and sentences about bottlenecks and sparing."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from byway.knowledge.graph.graph import Graph
+from byway.knowledge.graph.references import split_reference
+
+__all__ = ["CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_words", "join", "list_names", "share_words"]
+
+CAUTION = (
+    "This supports reasoning and research; it is no diagnosis. Local protocols and licensed practice decide."
+)
+
+VERBAL_SCALE: tuple[tuple[float, str], ...] = (
+    (0.02, "very unlikely"),
+    (0.10, "unlikely"),
+    (0.33, "possible"),
+    (0.55, "about as likely as not"),
+    (0.80, "likely"),
+    (0.95, "very likely"),
+    (1.00, "nearly certain, within what the model knows"),
+)
+"""Upper bounds of a probability and the words for it."""
+
+DEPARTURE_WORDS: dict[tuple[str, str], str] = {
+    ("dominance", "right"): "language is led by the right hemisphere",
+    ("reliance", "second"): "the person leans on the second route",
+    ("outside", "yes"): "part of the findings has a cause outside the lesion",
+    ("speaks", "cortical"): "only the damage of grey matter shows",
+    ("speaks", "segments"): "only the cut segments show",
+    ("perilesional", "yes"): "tissue around the lesion is out of action",
+    ("remote", "yes"): "regions that lost their input are silenced",
+    ("boundary", "too_small"): "the true lesion is larger than drawn",
+    ("boundary", "too_large"): "the true lesion is smaller than drawn",
+}
+
+
+def in_words(probability: float) -> str:
+    """A probability on the fixed verbal scale.
+
+    >>> in_words(0.4), in_words(0.97)
+    ('about as likely as not', 'nearly certain, within what the model knows')
+    """
+    return next((words for bound, words in VERBAL_SCALE if probability < bound), VERBAL_SCALE[-1][1])
+
+
+def join(parts: Sequence[str], last: str = "and") -> str:
+    """Words as a list.
+
+    >>> join(["a", "b", "c"]), join(["a"])
+    ('a, b and c', 'a')
+    """
+    if len(parts) < 2:
+        return "".join(parts)
+    return f"{', '.join(parts[:-1])} {last} {parts[-1]}"
+
+
+def list_names(graph: Graph, elements: Sequence[str], most: int = 3) -> str:
+    """Names of elements; those of one side share the side word.
+
+    >>> list_names.__doc__ is not None
+    True
+    """
+    shown = list(elements[:most])
+    by_side: dict[str, list[str]] = {}
+    for element in shown:
+        key, side = split_reference(element)
+        by_side.setdefault(side, []).append(graph.name_of(key))
+    parts = [("" if side == "midline" else f"{side} ") + join(names) for side, names in by_side.items()]
+    more = len(elements) - len(shown)
+    return join(parts) + (f" and {more} more" if more > 0 else "")
+
+
+def share_words(share: float) -> str:
+    """A damage share in words.
+
+    >>> share_words(0.99), share_words(0.5), share_words(0.01)
+    ('lost', 'half lost', 'hardly touched')
+    """
+    bounds = ((0.05, "hardly touched"), (0.35, "partly lost"), (0.65, "half lost"), (0.9, "mostly lost"))
+    return next((words for bound, words in bounds if share < bound), "lost")
