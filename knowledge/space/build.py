@@ -21,12 +21,13 @@ from byway.knowledge.space.template import template_hash
 
 __all__ = ["BUILD_VERSION", "build_geometry", "geometry_hash"]
 
-BUILD_VERSION = 1
+BUILD_VERSION = 2
 """Raised whenever the method changes, so that caches of older builds are not used."""
 
 _MIRROR = np.array([-1.0, 1.0, 1.0])
 _MIDLINE_GAP_MM = 0.6
 _SAME_PLACE_MM = 6.0
+_UNPULLED = ("template_limited", "thin_partial_volume", "does_not_fit")
 
 
 def geometry_hash(
@@ -38,7 +39,7 @@ def geometry_hash(
         template_hash(),
         [[k, r.sides, r.tissue, r.seeds_mni, r.volume_ml, spread_mm[k]] for k, r in regions.items()],
         [
-            [k, s.sides, s.from_place, s.to_place, s.waypoints_mni, s.radius_mm, spread_mm[k]]
+            [k, s.sides, s.from_place, s.to_place, s.waypoints_mni, s.radius_mm, s.fit, spread_mm[k]]
             for k, s in segments.items()
         ],
     ]
@@ -87,7 +88,7 @@ def build_geometry(
 
 
 def _core_line(segment: Segment) -> NDArray[np.float64]:
-    line = pull_course(np.array(segment.waypoints_mni))
+    line = pull_course(np.array(segment.waypoints_mni), pulled=segment.fit not in _UNPULLED)
     return line if _may_cross(segment) else _one_sided(line)
 
 

@@ -20,9 +20,11 @@ __all__ = ["STREAMLINES", "Bundle", "Ending", "make_bundle"]
 STREAMLINES = 208
 _GOLDEN_ANGLE = np.pi * (3.0 - np.sqrt(5.0))
 _FRINGE = 1.6
-_FAN_MM = 24.0
-_FAN_SHARE = 0.3
+_FAN_MM = 36.0
+_FAN_SHARE = 0.38
 _NEAR_COST = 22.0
+_BEND_MM = 20.0
+_BEND_SHARE = 0.4
 _NOWHERE = np.empty((0, 3))
 
 
@@ -84,14 +86,17 @@ def make_bundle(
     core = distance <= 1.0
     offsets = _offsets(core_line, distance * radius_mm, np.arange(count) * _GOLDEN_ANGLE, rng)
     offsets = offsets * _room(core_line, offsets)[..., None]
-    lines = list(core_line[None] + offsets)
-    for ending, backwards in ((endings[0], True), (endings[1], False)):
-        if backwards:
-            lines = [line[::-1] for line in lines]
-        lines = _finish(lines, core_line[::-1] if backwards else core_line, ending, core, rng)
-        if backwards:
-            lines = [line[::-1] for line in lines]
-    return Bundle([resample(line).astype(np.float32) for line in lines], core)
+    lines = core_line[None] + offsets
+    tail = _finish(lines, core_line, endings[1], core, rng)
+    # The same at the other end, seen from there: the reversed view shares its memory with the lines.
+    head = _finish(lines[:, ::-1], core_line[::-1], endings[0], core, rng)
+    streamlines = []
+    for line, (drop_last, last), (drop_first, first) in zip(lines, tail, head, strict=True):
+        whole = np.concatenate([first[::-1], line[drop_first : len(line) - drop_last], last])
+        whole = _eased(whole, len(first)) if len(first) else whole
+        whole = _eased(whole, len(whole) - len(last)) if len(last) else whole
+        streamlines.append(resample(whole).astype(np.float32))
+    return Bundle(streamlines, core)
 
 
 def _offsets(
@@ -129,26 +134,28 @@ def _room(core_line: NDArray[np.float64], offsets: NDArray[np.float64]) -> NDArr
 
 
 def _finish(
-    lines: list[NDArray[np.float64]],
+    lines: NDArray[np.float64],
     core_line: NDArray[np.float64],
     ending: Ending,
     core: NDArray[np.bool_],
     rng: np.random.Generator,
-) -> list[NDArray[np.float64]]:
-    """Lead the last part of each line to its target: a parcel's voxel, or the end of a bundle that takes over."""
+) -> list[tuple[int, NDArray[np.float64]]]:
+    """Lead the last part of each line to its target: a parcel's voxel, or the end of a bundle that takes over.
+
+    Lines that meet another bundle are bent in place. Of each line, returns how many points to drop at its end, and
+    the points to put in their place.
+    """
     fanning = len(ending.targets_mm) > 0
     through = ending.hands_over & (core | (not fanning))
-    lines = list(lines)
+    finished = [(0, _NOWHERE)] * len(lines)
     if len(ending.through_mm) and through.any():
-        which = np.flatnonzero(through)
-        ends = np.array([lines[i][-1] for i in which])
-        for i, goal in zip(which, _matched(ends, _drawn(ending.through_mm, len(which), rng)), strict=True):
-            lines[i] = _bent(lines[i], goal)
+        goals = _matched(lines[through, -1], _drawn(ending.through_mm, int(through.sum()), rng))
+        lines[through] = _bent(lines[through], core_line, goals)
     if fanning and not through.all():
-        which = np.flatnonzero(~through)
-        for i, line in zip(which, _fanned([lines[i] for i in which], core_line, ending.targets_mm, rng), strict=True):
-            lines[i] = line
-    return lines
+        fans = _fanned(lines[~through], core_line, ending.targets_mm, rng)
+        for i, fan in zip(np.flatnonzero(~through), fans, strict=True):
+            finished[i] = fan
+    return finished
 
 
 def _drawn(points: NDArray[np.float64], count: int, rng: np.random.Generator) -> NDArray[np.float64]:
@@ -160,41 +167,42 @@ def _drawn(points: NDArray[np.float64], count: int, rng: np.random.Generator) ->
 def _matched(ends: NDArray[np.float64], goals: NDArray[np.float64]) -> NDArray[np.float64]:
     """Goals in the order of the ends, paired so that the summed squared shift is least."""
     rows, columns = linear_sum_assignment(cdist(ends, goals, "sqeuclidean"))
-    return goals[columns[np.argsort(rows)]]
+    return np.asarray(goals[columns[np.argsort(rows)]])
 
 
-def _bent(line: NDArray[np.float64], goal: NDArray[np.float64]) -> NDArray[np.float64]:
-    """The line with its last 20 mm (at most 40 %) bent smoothly so that it ends at the goal."""
-    along = arc_length(line)
-    reach = min(20.0, 0.4 * along[-1])
+def _bent(
+    lines: NDArray[np.float64], core_line: NDArray[np.float64], goals: NDArray[np.float64]
+) -> NDArray[np.float64]:
+    """Lines with their last 20 mm (at most 40 %) bent smoothly so that they end at the goals."""
+    along = arc_length(core_line)
+    reach = min(_BEND_MM, _BEND_SHARE * along[-1])
     share = np.clip(1.0 - (along[-1] - along) / reach, 0.0, 1.0)
     share = share**2 * (3.0 - 2.0 * share)
-    return np.asarray(line + share[:, None] * (goal - line[-1]))
+    return np.asarray(lines + share[None, :, None] * (goals - lines[:, -1])[:, None, :])
 
 
 def _fanned(
-    lines: list[NDArray[np.float64]],
+    lines: NDArray[np.float64],
     core_line: NDArray[np.float64],
     targets_mm: NDArray[np.float64],
     rng: np.random.Generator,
-) -> list[NDArray[np.float64]]:
+) -> list[tuple[int, NDArray[np.float64]]]:
     along = arc_length(core_line)
     leave = int(np.searchsorted(along, along[-1] - min(_FAN_MM, _FAN_SHARE * along[-1])))
-    reach = reach_from(core_line[leave])
+    reach = reach_from(core_line[leave:])
     cost = reach.cost_to(targets_mm)
     near = cost <= cost.min() + _NEAR_COST if np.isfinite(cost).any() else np.ones(len(cost), bool)
     goals = targets_mm[near]
     goals = goals[rng.choice(len(goals), len(lines), replace=len(goals) < len(lines))]
-    goals = _matched(np.array([line[-1] for line in lines]), goals)
-    finished = []
+    goals = _matched(lines[:, -1], goals)
+    fans = []
     for line, goal in zip(lines, goals, strict=True):
-        way = reach.way_to(goal)
-        offset = line[leave] - core_line[leave]
+        door, way = reach.way_to(goal)
+        door += leave
         fade = np.linspace(1.0, 0.0, len(way))
         fade = fade**2 * (3.0 - 2.0 * fade)
-        joined = np.concatenate([line[:leave], way + fade[:, None] * offset])
-        finished.append(_eased(joined, leave))
-    return finished
+        fans.append((len(line) - door, way + fade[:, None] * (line[door] - core_line[door])))
+    return fans
 
 
 def _eased(line: NDArray[np.float64], at: int) -> NDArray[np.float64]:
