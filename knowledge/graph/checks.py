@@ -135,9 +135,8 @@ def _check_spelling(graph: Content, report: FaultReport) -> None:
     for key, kinds in holders.items():
         if len(kinds) > 1:
             also = ", ".join(graph.where(kind, key) for kind in kinds[:-1])
-            report.add(
-                "ambiguous-key", graph.where(kinds[-1], key), f"{kinds[-1]} shares its key", "a key of its own", also
-            )
+            where = graph.where(kinds[-1], key)
+            report.add("ambiguous-key", where, f"{kinds[-1]} shares its key", "a key of its own", f"see {also}")
 
 
 def _check_keys(graph: Content, report: FaultReport) -> None:

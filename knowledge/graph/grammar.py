@@ -147,7 +147,8 @@ def _route_block(route: Route) -> dict[str, Any]:
 
 def _expected(message: str) -> str:
     """Pydantic's sentence as the second half of ours."""
-    words = message.removeprefix("Input should be ").removeprefix("Value error, ")
+    words = message.removeprefix("Input should be ").removeprefix("Value error, ").removeprefix("Tuple should have ")
+    words = words.partition(" after validation")[0]
     return words[:1].lower() + words[1:]
 
 
