@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from typing import Any, ClassVar
 
 import anywidget
@@ -13,7 +13,7 @@ from byway.knowledge.graph.references import split_reference
 from byway.widgets.state import BenchState
 from byway.widgets.words import section
 
-__all__ = ["Panel", "element_words", "state_of"]
+__all__ = ["Panel", "claims_of", "element_words", "state_of"]
 
 
 def state_of(source: Any) -> BenchState:
@@ -68,7 +68,9 @@ class Panel(anywidget.AnyWidget):
     def graph(self) -> Any:
         """The graph in use, or None where the state has none."""
         graph = self.state.science.graph
-        return graph if graph is not None else getattr(self.state.explanation, "graph", None)
+        if graph is None and self.state.explanation is not None:
+            graph = self.state.explanation.reckoning.prepared.graph
+        return graph
 
     def when(self, names: list[str], call: Callable[[], None]) -> None:
         """Call when any named trait of the state moves, until the panel is closed."""
@@ -110,3 +112,24 @@ def element_words(graph: Any, element: str) -> dict[str, str]:
     if graph is not None and (key in graph.regions or key in graph.segments):
         name = graph.name_of(key)
     return {"id": element, "kind": kind, "name": name, "side": side or "midline"}
+
+
+def claims_of(claims: Iterable[Any], graph: Any) -> list[dict[str, Any]]:
+    """Claims with their sources spelt out: authors, year, title, container, and whether the text was read."""
+    rows = []
+    for claim in claims:
+        record = graph.claims[claim] if isinstance(claim, str) and graph is not None else claim
+        sources = [_source(source, graph) for source in record.sources]
+        rows.append({"key": record.key, "says": record.says, "grade": record.grade, "kind": record.kind,
+                     "population": record.population, "stance": record.stance, "note": record.note,
+                     "sources": sources})  # fmt: skip
+    return rows
+
+
+def _source(key: str, graph: Any) -> dict[str, Any]:
+    record = graph.sources.get(key) if graph is not None else None
+    if record is None:
+        return {"key": key, "text": key, "doi": None, "checked": "memory"}
+    title = f" {record.title}." if record.title else ""
+    text = f"{record.authors} ({record.year}){title} {record.container}"
+    return {"key": key, "text": text, "doi": record.doi, "checked": record.checked}

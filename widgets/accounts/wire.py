@@ -2,15 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
 from typing import Any
 
 import pandas as pd
 
-from byway.widgets.panel import element_words
+from byway.widgets.panel import claims_of, element_words
 from byway.widgets.wire import plain
 
-__all__ = ["claims_of", "told_of"]
+__all__ = ["profile_rows", "told_of"]
 
 MOST_ELEMENTS = 8
 MOST_CHANGES = 12
@@ -82,30 +81,34 @@ def _changes(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:
     return rows
 
 
-def claims_of(claims: Iterable[Any], graph: Any) -> list[dict[str, Any]]:
-    """Claims with their sources spelt out: authors, year, title, container, and whether the text was read."""
-    rows = []
-    for claim in claims:
-        record = graph.claims[claim] if isinstance(claim, str) and graph is not None else claim
-        sources = [_source(source, graph) for source in record.sources]
-        rows.append({"key": record.key, "says": record.says, "grade": record.grade, "kind": record.kind,
-                     "population": record.population, "stance": record.stance, "note": record.note,
-                     "sources": sources})  # fmt: skip
-    return rows
-
-
-def _source(key: str, graph: Any) -> dict[str, Any]:
-    record = graph.sources.get(key) if graph is not None else None
-    if record is None:
-        return {"key": key, "text": key, "doi": None, "checked": "memory"}
-    title = f" {record.title}." if record.title else ""
-    text = f"{record.authors} ({record.year}){title} {record.container}"
-    return {"key": key, "text": text, "doi": record.doi, "checked": record.checked}
-
-
 def _next_tests(table: pd.DataFrame) -> list[dict[str, Any]]:
     return _rows(table.head(MOST_NEXT))
 
 
 def _next_images(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:
     return [{**row, "element": element_words(graph, row["element"])} for row in _rows(table.head(MOST_NEXT))]
+
+
+def profile_rows(explanation: Any, graph: Any) -> list[dict[str, Any]]:
+    """Signs with what is expected of them and what was found, grouped under the function each depends on most."""
+    if explanation is None:
+        return []
+    rows = []
+    for row in _rows(explanation.signs):
+        found = row["found"] if isinstance(row["found"], str) and row["found"] != "not_tested" else None
+        rows.append({
+            "id": f"{row['sign']}@{row['side']}", "name": row["name"], "side": row["side"],
+            "group": _function_name(row["sign"], graph), "found": found or None,
+            "expected": row["expected"], "expected_cortical": row["expected_cortical"],
+            "low": row["low"], "high": row["high"],
+        })  # fmt: skip
+    rows.sort(key=lambda row: (row["found"] is None, -abs(row["expected"] - row["expected_cortical"])))
+    return list(plain(rows))
+
+
+def _function_name(sign: str, graph: Any) -> str:
+    depends = graph.signs[sign].depends if graph is not None and sign in graph.signs else ()
+    if not depends:
+        return ""
+    most = max(depends, key=lambda dependence: dependence.weight)
+    return str(graph.functions[most.function].name)

@@ -24,7 +24,7 @@ function drawNet(net, words, width, selected, select, describe) {
     const reach = node.kind === "region" ? Math.max(96, width / 7) : box.w;
     const button = h("button", { type: "button", class: "bw-route-label", "data-element": node.id, "aria-pressed": selected === node.id ? "true" : "false",
       style: `left:${box.x}px;top:${box.y}px;max-width:${reach}px`, onclick: () => { select(node.id); describe(n); }, onfocus: () => describe(n), onmouseenter: () => describe(n) },
-      h("span", {}, glyph(node.kind), " ", node.name, node.side === "midline" ? null : h("span", { class: "bw-side" }, words[`${node.side}_short`])),
+      h("span", {}, glyph(node.kind), " ", node.side === "midline" ? null : [h("span", { class: "bw-side" }, words[`${node.side}_short`]), " "], node.name),
       node.damage >= 0.005 ? h("span", { class: "bw-soft" }, number(`routes/${net.copy}/elements/${node.id}/damage`, node.damage, percent(node.damage)), ` ${words.lost}`) : null);
     return button;
   });
@@ -56,7 +56,8 @@ function drawFacts(node, net, words) {
 function render({ model, el }) {
   const words = model.get("words");
   const chooser = h("select", { "aria-label": words.choose, onchange: () => { model.set("chosen", chooser.value); model.save_changes(); } });
-  const { panel, body, foot } = frame(el, words, "routes", chooser);
+  const under = h("select", { "aria-label": words.under, onchange: () => { model.set("account", Number(under.value)); model.save_changes(); } });
+  const { panel, body, foot } = frame(el, words, "routes", chooser, under);
   const head = h("p", { class: "bw-route-head" });
   const capacity = number();
   const sentence = h("span", {});
@@ -87,12 +88,19 @@ function render({ model, el }) {
         list.map((choice) => h("option", { value: choice.id }, `${choice.name} (${percent(choice.capacity)})`)))));
     }
     chooser.value = model.get("chosen");
+    const titles = model.get("accounts");
+    if (under.$shown !== JSON.stringify(titles)) {
+      under.$shown = JSON.stringify(titles);
+      under.replaceChildren(h("option", { value: "-1" }, words.as_drawn), ...titles.map((title, i) => h("option", { value: String(i) }, `${i + 1}. ${title}`)));
+    }
+    under.value = String(model.get("account"));
     const none = !net || !net.nodes;
     for (const node of [head, stage, table, facts]) node.hidden = none;
     empty.hidden = !none;
     if (none) return;
-    setNumber(capacity, `functions/${net.copy}/capacity`, net.capacity, percent(net.capacity));
-    say(sentence, net.words);
+    setNumber(capacity, `routes/${net.copy}/capacity`, net.capacity, percent(net.capacity));
+    const held = net.nodes.filter((node) => node.held).map((node) => node.name);
+    say(sentence, held.length ? fill(words.held_by, { names: held.join(", ") }) : words.not_held);
     const room = Math.max(560, Math.floor(stage.clientWidth || 800));
     const now = JSON.stringify([net, room, model.get("selected")]);
     if (told !== now) {
@@ -113,7 +121,7 @@ function render({ model, el }) {
     draw();
   });
   sized.observe(stage);
-  const stop = watch(model, ["net", "choices", "chosen", "selected", "stamp"], draw);
+  const stop = watch(model, ["net", "choices", "chosen", "accounts", "account", "selected", "stamp"], draw);
   return () => {
     sized.disconnect();
     stop();

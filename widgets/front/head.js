@@ -1,0 +1,45 @@
+// The strip above the panels: which case, what is known of the person, the caution, and the last remark.
+import { fill, freshId, guardKeys, h, mark, say, watch } from "./kit.js";
+
+function field(name, words, options, change) {
+  const id = freshId(name);
+  const select = h("select", { id, onchange: () => change(name, select.value) },
+    options.map((value) => h("option", { value }, words[`${name}_${value}`] || value)));
+  return Object.assign(h("div", { class: "bw-field" }, h("label", { for: id, class: "bw-soft" }, words[name]), select), { select });
+}
+
+function render({ model, el }) {
+  const words = model.get("words");
+  const change = (name, value) => model.send({ kind: "case", name, value });
+  const title = h("h1", { class: "bw-case" });
+  const invented = h("span", { class: "bw-tag" }, words.invented);
+  const fields = Object.entries(model.get("options")).map(([name, options]) => field(name, words, options, change));
+  const age = h("span", { class: "bw-soft" });
+  const notice = h("p", { class: "bw-notice", role: "status" });
+  const save = h("button", { type: "button", class: "bw-button", onclick: () => model.send({ kind: "save" }) }, words.save);
+  const panel = h("header", { class: "byway-panel byway-head", "aria-label": words.title },
+    h("div", { class: "bw-head-line" }, title, invented, h("div", { class: "bw-head-fields" }, age, fields, save)),
+    notice, h("p", { class: "bw-head-caution bw-soft" }, words.caution));
+  guardKeys(panel);
+  el.append(panel);
+
+  function draw() {
+    const told = model.get("told");
+    say(title, told.title || words.untitled);
+    invented.hidden = !told.invented;
+    say(age, told.age_band && told.age_band !== "unknown" ? fill(words.age, { band: told.age_band }) : "");
+    for (const [i, name] of Object.keys(model.get("options")).entries()) {
+      fields[i].select.value = told[name];
+      fields[i].select.disabled = !told.open;
+    }
+    save.hidden = !told.folder;
+    const text = model.get("notice");
+    say(notice, text);
+    notice.hidden = !text;
+    mark(panel, "data-stamp", model.get("stamp"));
+  }
+
+  return watch(model, ["told", "notice", "stamp"], draw);
+}
+
+export default { render };

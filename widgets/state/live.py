@@ -1,0 +1,72 @@
+"""The answers of ``byway.knowledge`` for the state: one desk, read once, asked many times."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from functools import cached_property
+from typing import Any
+
+from byway.knowledge.cases.desk import Desk, desk_for
+from byway.knowledge.damage.ensemble import EnsembleSettings, ensemble
+from byway.knowledge.damage.point import point_damage
+from byway.knowledge.graph.graph import Graph
+from byway.knowledge.lesion.lesion import Lesion
+from byway.knowledge.reasoning.explain import explain_findings
+from byway.knowledge.space.geometry import Geometry
+
+__all__ = ["LiveScience"]
+
+
+class LiveScience:
+    """Answers from a desk.
+
+    Parameters
+    ----------
+    desk : Desk, optional
+        Graph, template and damage index; the base graph's where None.
+    draws : int
+        Virtual anatomies of an ensemble.
+    """
+
+    def __init__(self, desk: Desk | None = None, *, draws: int = 200) -> None:
+        self.desk = desk if desk is not None else desk_for()
+        self.draws = draws
+
+    @property
+    def graph(self) -> Graph:
+        """The graph in effect."""
+        return self.desk.graph
+
+    @property
+    def geometry(self) -> Geometry:
+        """Geometry of all elements of that graph."""
+        return self.desk.template.geometry
+
+    @cached_property
+    def names(self) -> dict[str, str]:
+        """Names of regions, segments, functions and signs by bare key."""
+        graph = self.graph
+        keys = (*graph.regions, *graph.segments, *graph.functions, *graph.signs)
+        return {key: graph.name_of(key) for key in keys}
+
+    def damage(self, lesion: Lesion) -> Any:
+        """Point damage of every element."""
+        return point_damage(lesion, self.desk.index)
+
+    def explain(
+        self, lesion: Lesion, damage: Any, case: Any, findings: Any, check: Callable[[], None]
+    ) -> tuple[Any, Any]:
+        """The ensemble, and the explanation of the findings by it."""
+        settings = EnsembleSettings.from_norms(self.graph, lesion, draws=self.draws)
+
+        def heard(done: int, total: int) -> None:
+            check()
+
+        drawn = ensemble(lesion, self.desk.index, settings, progress=heard)
+        check()
+        spec = case.spec
+        explanation = explain_findings(
+            self.graph, drawn, damage, spec.person, spec.stage, spec.cause, findings, priors=spec.priors,
+            damage_table=damage.table(drawn.interval(), names=self.names),
+        )  # fmt: skip
+        return drawn, explanation
