@@ -102,7 +102,9 @@ class Content:
     def where(self, kind: Kind, key: str) -> str:
         """File, line and key of a record, as faults name them."""
         origin = self.origins.get((kind, key))
-        return f"{origin.file}:{origin.line} {key}" if origin else f"{kind} {key}"
+        if origin is None:
+            return f"{kind} {key}"
+        return f"{origin.file}:{origin.line} {key}" if origin.line else f"{origin.file} {key}"
 
     def counts(self) -> dict[str, int]:
         """Number of records of each kind, and of routes."""

@@ -73,7 +73,7 @@ def test_grave_faults_raise_together(tmp_path: Path) -> None:
     folder = tmp_path / "graph"
     spoil(BREAKING / "no-route.yaml", folder)
     report = check_graph(read_curated(folder))
-    with pytest.raises(GraphError, match="functions/all.yaml:27 balance: no route") as caught:
+    with pytest.raises(GraphError, match=r"functions/all\.yaml:27 balance: no route") as caught:
         report.raise_if_grave(GraphError)
     assert len(caught.value.faults) == len(report.grave) == 1
 
