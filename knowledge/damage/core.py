@@ -5,13 +5,14 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.damage.rows import Rows
 from byway.knowledge.space.geometry import Geometry
-from numpy.typing import NDArray
 
 __all__ = ["BLOCK", "CoreTable"]
 
-BLOCK = 8  # voxels along the side of a search block
+BLOCK = 3  # voxels along the side of a search block; odd, so that its centre is a voxel
 
 
 @dataclass(frozen=True, eq=False)
@@ -25,13 +26,14 @@ class CoreTable:
     by_row : Rows
         Elements whose core passes the voxel of each row of the index.
     group_element, group_block : (K,) int32
-        A group is what one element's core has in one block of ``BLOCK`` voxels a side; groups ascend by element.
+        A group is what one element's core has in one block of ``BLOCK`` voxels a side; groups ascend by element, and
+        blocks are counted in C order.
     group_offsets : (K + 1,) int64
         Bounds of each group in ``voxels``.
     voxels : (M, 3) int16
         Voxel indices of all groups.
-    block_centres : (B, 3) float64
-        Centre of each block, in voxels.
+    blocks : tuple of int
+        Blocks along each axis of the grid.
     """
 
     n_elements: int
@@ -40,7 +42,7 @@ class CoreTable:
     group_block: NDArray[np.int32] = field(repr=False)
     group_offsets: NDArray[np.int64] = field(repr=False)
     voxels: NDArray[np.int16] = field(repr=False)
-    block_centres: NDArray[np.float64] = field(repr=False)
+    blocks: tuple[int, ...]
 
     @classmethod
     def build(
@@ -68,19 +70,18 @@ class CoreTable:
         shape = geometry.grid.shape
         ijk = np.stack(np.unravel_index(voxel_of_row, shape), axis=1).astype(np.int16)
         blocks = tuple(-(-n // BLOCK) for n in shape)
-        ids = np.asarray(np.ravel_multi_index(tuple((ijk // BLOCK).T), blocks))
-        used, block_of_row = np.unique(ids, return_inverse=True)
-        centres = np.stack(np.unravel_index(used, blocks), axis=1).astype(float) * BLOCK + (BLOCK - 1) / 2
-        key = element.astype(np.int64) * len(used) + block_of_row[row]
-        order = np.argsort(key, kind="stable")
+        block_of_row = np.asarray(np.ravel_multi_index(tuple((ijk // BLOCK).T), blocks))
+        n_blocks = int(np.prod(blocks))
+        key = element.astype(np.int64) * n_blocks + block_of_row[row]
+        order = np.argsort(key)
         key, row_sorted = key[order], row[order]
         first = np.flatnonzero(np.diff(key, prepend=-1))
         return cls(
             n_elements=len(geometry.element_ids),
             by_row=Rows(offsets, element),
-            group_element=(key[first] // len(used)).astype(np.int32),
-            group_block=(key[first] % len(used)).astype(np.int32),
+            group_element=(key[first] // n_blocks).astype(np.int32),
+            group_block=(key[first] % n_blocks).astype(np.int32),
             group_offsets=np.append(first, len(key)),
             voxels=ijk[row_sorted],
-            block_centres=centres,
+            blocks=blocks,
         )

@@ -7,6 +7,8 @@ from dataclasses import dataclass, field
 from typing import Protocol
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.damage.anatomies import Anatomies, normal_levels
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.point import effect_voxels
@@ -14,7 +16,6 @@ from byway.knowledge.damage.sample import CELL, Sample
 from byway.knowledge.damage.words import VARIANTS, EffectWords
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
-from numpy.typing import NDArray
 
 __all__ = ["VARIANTS", "Ensemble", "EnsembleSettings", "EnsembleStoppedError", "Norms", "ensemble"]
 
@@ -210,13 +211,18 @@ class _Near:
 
     def __init__(self, sample: Sample, words: EffectWords, anatomies: Anatomies, spread_scale: float) -> None:
         spread = sample.spread_mm.astype(float) * spread_scale
-        reach = anatomies.reach(spread).astype(np.int32)
+        reach = anatomies.reach(spread).astype(np.int32)[sample.mover_element]
         self.pad = int(reach.max(initial=0))
         box = np.array(words.volumes[0].shape)
-        element_of_point = np.repeat(sample.group_element, np.diff(sample.group_offsets))
-        place = sample.voxels - words.origin
-        margin = reach[element_of_point][:, None]
-        kept = np.flatnonzero(((place >= -margin) & (place < box + margin)).all(axis=1))
+        # Whole cells first, then points.
+        from_box = sample.mover_centre - words.origin
+        margin = (reach + CELL // 2 + 1)[:, None]
+        near = np.asarray(((from_box >= -margin) & (from_box < box + margin)).all(axis=1))
+        kept = np.flatnonzero(near[sample.mover])
+        mover, place = sample.mover[kept], sample.voxels[kept] - words.origin
+        margin = reach[mover][:, None]
+        inside = ((place >= -margin) & (place < box + margin)).all(axis=1)
+        kept, mover, place = kept[inside], mover[inside], place[inside]
         group = np.searchsorted(sample.group_offsets, kept, side="right") - 1
         self.group_starts = np.flatnonzero(np.diff(group, prepend=-1))
         groups = group[self.group_starts]
@@ -225,19 +231,14 @@ class _Near:
         self.element_starts = np.flatnonzero(np.diff(element, prepend=-1))
         self.elements = element[self.element_starts]
 
-        # Points of one element in one cell move together.
-        middle = (np.array(sample.shape) - 1) / 2
-        cell = np.rint((sample.voxels[kept] - middle) / CELL).astype(np.int64)
-        radix = 2 * (max(sample.shape) // CELL + 2) + 1
-        key = element_of_point[kept].astype(np.int64)
-        for axis in range(3):
-            key = key * radix + cell[:, axis] + radix // 2
-        _, first, self.mover = np.unique(key, return_index=True, return_inverse=True)
-        self.mover_centre = cell[first] * CELL + middle
-        self.mover_element = element_of_point[kept][first]
+        used = np.zeros(len(near), bool)
+        used[mover] = True
+        self.mover = (np.cumsum(used) - 1)[mover]
+        self.mover_centre = sample.mover_centre[used]
+        self.mover_element = sample.mover_element[used]
         self.mover_spread = spread[self.mover_element]
         self.shape = tuple(int(n) for n in box + 2 * self.pad)
-        padded = place[kept].astype(np.int64) + self.pad
+        padded = place.astype(np.int64) + self.pad
         self.base = (padded[:, 0] * self.shape[1] + padded[:, 1]) * self.shape[2] + padded[:, 2]
 
     def words_of_groups(

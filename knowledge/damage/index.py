@@ -7,13 +7,14 @@ from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
+from numpy.typing import NDArray
+from scipy import sparse
+
 from byway.knowledge.damage.core import CoreTable
 from byway.knowledge.damage.rows import Rows
 from byway.knowledge.damage.sample import Sample
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.space.geometry import Geometry
-from numpy.typing import NDArray
-from scipy import sparse
 
 __all__ = ["DamageIndex"]
 

@@ -9,13 +9,14 @@ from typing import Any
 
 import numpy as np
 import pandas as pd
+from numpy.typing import NDArray
+
 from byway.knowledge.damage.clearance import clearance_mm
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.rows import gather_rows
 from byway.knowledge.damage.tables import damage_frame
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
-from numpy.typing import NDArray
 
 __all__ = ["Damage", "effect_voxels", "point_damage"]
 

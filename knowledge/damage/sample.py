@@ -5,8 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 import numpy as np
-from byway.knowledge.space.geometry import Geometry
 from numpy.typing import NDArray
+
+from byway.knowledge.space.geometry import Geometry
 
 __all__ = ["CELL", "Sample"]
 
@@ -24,6 +25,10 @@ class Sample:
         Shape of the grid.
     voxels : (P, 3) int32
         Voxel indices of the points (may lie outside the grid).
+    mover : (P,) int32
+        Which points move together: those of one element in one cell of 8 x 8 x 8 voxels.
+    mover_element, mover_centre : (C,) int32, (C, 3) float32
+        Whose points these are, and the centre of the cell, in voxels.
     group_offsets : (K + 1,) int64
         Bounds of the groups in ``voxels``.
     group_element : (K,) int32
@@ -38,6 +43,9 @@ class Sample:
 
     shape: tuple[int, int, int]
     voxels: NDArray[np.int32] = field(repr=False)
+    mover: NDArray[np.int32] = field(repr=False)
+    mover_element: NDArray[np.int32] = field(repr=False)
+    mover_centre: NDArray[np.float32] = field(repr=False)
     group_offsets: NDArray[np.int64] = field(repr=False)
     group_element: NDArray[np.int32] = field(repr=False)
     group_weight: NDArray[np.float32] = field(repr=False)
@@ -46,7 +54,7 @@ class Sample:
 
     @classmethod
     def build(
-        cls, geometry: Geometry, *, streamlines: int | None = 48, step: int = 2, voxels: int | None = 400
+        cls, geometry: Geometry, *, streamlines: int | None = 100, step: int = 2, voxels: int | None = 300
     ) -> Sample:
         """Take a sample, the same every time.
 
@@ -85,15 +93,37 @@ class Sample:
         at, count = _every(geometry.streamline_offsets[lines], geometry.streamline_offsets[lines + 1], step)
         ijk.append(np.rint(geometry.grid.to_voxel(geometry.points_mm[at])).astype(np.int32))
         sizes = np.concatenate([np.ones(len(parcel), np.int64), count])
+        place = np.concatenate(ijk)
+        group_element = np.concatenate([np.empty(0, np.int32), *elements])
+        element = np.repeat(group_element, sizes)
+        mover, centre, first = _movers(place, element, geometry.grid.shape)
         return cls(
             shape=geometry.grid.shape,
-            voxels=np.concatenate(ijk),
+            voxels=place,
+            mover=mover,
+            mover_element=element[first],
+            mover_centre=centre,
             group_offsets=np.concatenate([[0], np.cumsum(sizes)]),
-            group_element=np.concatenate([np.empty(0, np.int32), *elements]),
+            group_element=group_element,
             group_weight=np.concatenate([np.empty(0, np.float32), *weights]),
             partner=_partners(geometry),
             spread_mm=geometry.spread_mm,
         )
+
+
+def _movers(
+    voxels: NDArray[np.int32], element: NDArray[np.int32], shape: tuple[int, int, int]
+) -> tuple[NDArray[np.int32], NDArray[np.float32], NDArray[np.int64]]:
+    """Number of each point's mover, the centre of each mover's cell, and its first point."""
+    middle = (np.array(shape) - 1) / 2
+    # Cells are laid out from the middle of the grid, so that they mirror one another across the midline.
+    cell = np.rint((voxels - middle) / CELL).astype(np.int64)
+    radix = 2 * int(np.abs(cell).max(initial=0)) + 1
+    key = element.astype(np.int64)
+    for axis in range(3):
+        key = key * radix + cell[:, axis] + radix // 2
+    _, first, mover = np.unique(key, return_index=True, return_inverse=True)
+    return mover.astype(np.int32), (cell[first] * CELL + middle).astype(np.float32), first
 
 
 def _evenly(first: int, last: int, most: int | None) -> NDArray[np.int64]:

@@ -6,8 +6,9 @@ from collections.abc import Mapping
 
 import numpy as np
 import pandas as pd
-from byway.knowledge.space.geometry import Geometry
 from numpy.typing import NDArray
+
+from byway.knowledge.space.geometry import Geometry
 
 __all__ = ["DAMAGE_COLUMNS", "damage_frame"]
 

@@ -10,8 +10,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
-from byway.knowledge.lesion.distance import LevelSet
 from numpy.typing import NDArray
+
+from byway.knowledge.lesion.distance import LevelSet
 
 __all__ = ["MOST_LEVELS", "VARIANTS", "EffectWords", "effect_levels"]
 
@@ -117,6 +118,12 @@ class EffectWords:
 
     def decoded(self, words: NDArray[np.unsignedinteger], variant: str) -> NDArray[np.float32]:
         """D of one variant for each word."""
+        if words.dtype.itemsize <= 2:
+            every = np.arange(np.iinfo(words.dtype).max + 1, dtype=words.dtype)
+            return np.asarray(self._unpacked(every, variant)[words])
+        return self._unpacked(words, variant)
+
+    def _unpacked(self, words: NDArray[np.unsignedinteger], variant: str) -> NDArray[np.float32]:
         levels = np.concatenate([[np.float32(0)], self.levels[variant]]).astype(np.float32)
         n_bits = len(levels) - 1
         run = (words >> words.dtype.type(self.first_bit[variant])) & words.dtype.type((1 << n_bits) - 1)

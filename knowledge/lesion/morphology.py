@@ -281,7 +281,7 @@ def _signed_distance(mask: Mask) -> NDArray[np.float64]:
     """Distance (voxels) to the edge: negative inside, positive outside, 0 on the faces between."""
     outside = ndimage.distance_transform_edt(~mask)
     inside = ndimage.distance_transform_edt(mask)
-    return np.where(mask, 0.5 - inside, outside - 0.5)
+    return np.asarray(np.where(mask, 0.5 - inside, outside - 0.5))
 
 
 def _slopes(place: NDArray[np.float64], value: NDArray[np.float64]) -> NDArray[np.float64]:
