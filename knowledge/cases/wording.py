@@ -1,0 +1,64 @@
+"""An explanation in plain text, for the command line: the same numbers and names as everywhere else."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+
+from byway.knowledge.cases.case import Case
+from byway.knowledge.reasoning.accounts import Account
+from byway.knowledge.reasoning.explain import Explanation
+
+__all__ = ["anatomy_words", "explanation_text"]
+
+SHOWN_ACCOUNTS = 4
+SHOWN_ROWS = 8
+
+
+def anatomy_words(explanation: Explanation) -> str:
+    """Whose anatomy the damage rests on, in words."""
+    whose = sorted(set(explanation.damage["anatomy"])) if "anatomy" in explanation.damage else []
+    others = [name for name in whose if name != "template"]
+    words = ["the template's, not this person's"] if "template" in whose else []
+    return " and ".join([*others, *words]) or "not stated"
+
+
+def explanation_text(case: Case, explanation: Explanation) -> str:
+    """The case, what is hit, the leading accounts and what to test next, as lines of text."""
+    spec, lines = case.spec, []
+    lines += [spec.title or case.folder.name, "=" * len(spec.title or case.folder.name)]
+    if spec.invented:
+        lines.append("Invented data.")
+    lines.append(f"{spec.stage} {spec.cause}; handedness {spec.person.handedness}; "
+                 f"lesion {case.lesion.volume_ml:.1f} ml; uncharted_share {explanation.uncharted_share:.2f}")  # fmt: skip
+    lines += [f"note: {note}" for note in case.lesion.notes]
+    lines += ["", "What is hit", "-----------"]
+    hit = explanation.damage[explanation.damage["share"] >= 0.02].head(SHOWN_ROWS)
+    for row in hit.itertuples():
+        word = "lost" if row.kind == "region" else "severed"
+        lines.append(f"  {row.share:5.2f} ({row.low:.2f}-{row.high:.2f}) {word:8} {row.name}, {row.side} [{row.element}]")
+    lines += ["", "Accounts", "--------"]
+    for rank, account in enumerate(explanation.accounts[:SHOWN_ACCOUNTS], start=1):
+        lines += _account_lines(rank, account)
+    lines += ["", "Next tests", "----------"]
+    for row in explanation.next_tests.head(5).itertuples():
+        side = "" if row.side == "none" else f" ({row.side})"
+        lines.append(f"  {row.bits:.3f} bits  {row.name}{side}, {row.minutes:g} min")
+    lines += ["", f"Anatomy: {anatomy_words(explanation)}.", "No atlas entry does not mean no tract."]
+    return "\n".join(lines)
+
+
+def _account_lines(rank: int, account: Account) -> list[str]:
+    lines = [f"{rank}. {account.title}",
+             f"   {account.kind}: posterior {account.posterior:.3f} ({account.words}); "
+             f"odds against the plain cortical reading {account.odds_vs_cortical:.2g}"]  # fmt: skip
+    for label, signs in (("explains", account.explains), ("leaves", account.leaves),
+                         ("predicts in vain", account.predicts_absent)):  # fmt: skip
+        if signs:
+            lines.append(f"   {label}: {_names(f'{s.name} ({s.p_sign:.2f})' for s in signs)}")
+    for words in account.bottlenecks["words"].head(3):
+        lines.append(f"   {words}")
+    return lines
+
+
+def _names(words: Iterable[str]) -> str:
+    return ", ".join(words)
