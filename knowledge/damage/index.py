@@ -14,11 +14,13 @@ from byway.knowledge.damage.core import CoreTable
 from byway.knowledge.damage.rows import Rows
 from byway.knowledge.damage.sample import Sample
 from byway.knowledge.faults import BywayError, Fault
+from byway.knowledge.lesion.distance import squared_distance
 from byway.knowledge.space.geometry import Geometry
 
 __all__ = ["DamageIndex"]
 
 _CHUNK = 1_000_000
+_CHARTED_MM = 1.5
 
 
 @dataclass(frozen=True, eq=False)
@@ -113,6 +115,19 @@ class DamageIndex:
     def sample(self) -> Sample:
         """The ensemble's usual sample; built when first asked for."""
         return Sample.build(self.geometry)
+
+    @cached_property
+    def charted(self) -> NDArray[np.bool_]:
+        """Voxels within 1.5 mm of one that a streamline of any segment passes; built when first asked for.
+
+        The reach closes the gaps between the streamlines of one bundle, which stand for all of its fibres.
+        """
+        grid = self.geometry.grid
+        passed = np.zeros(grid.size, bool)
+        passed[self.voxel_of_row[np.diff(self.segments.offsets) > 0]] = True
+        reach = _CHARTED_MM / float(np.cbrt(grid.voxel_ml * 1000))
+        near = squared_distance(passed.reshape(grid.shape), int(np.ceil(reach)))
+        return np.asarray(near <= reach**2)
 
     @cached_property
     def region_weight(self) -> NDArray[np.float64]:
