@@ -27,6 +27,7 @@ BUILD_VERSION = 2
 _MIRROR = np.array([-1.0, 1.0, 1.0])
 _MIDLINE_GAP_MM = 0.6
 _SAME_PLACE_MM = 6.0
+_THIN_MM = 2.0
 _UNPULLED = ("template_limited", "thin_partial_volume", "does_not_fit")
 
 
@@ -88,7 +89,8 @@ def build_geometry(
 
 
 def _core_line(segment: Segment) -> NDArray[np.float64]:
-    line = pull_course(np.array(segment.waypoints_mni), pulled=segment.fit not in _UNPULLED)
+    pulled = segment.fit not in _UNPULLED and segment.radius_mm >= _THIN_MM
+    line = pull_course(np.array(segment.waypoints_mni), pulled=pulled)
     return line if _may_cross(segment) else _one_sided(line)
 
 
