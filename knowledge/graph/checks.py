@@ -241,7 +241,7 @@ def _check_spreads(graph: Content, report: FaultReport) -> None:
     """Every kind and variability of a segment has a between-subject spread."""
     norm = graph.norms.get("spread_mm")
     known = norm.value if norm and isinstance(norm.value, dict) else {}
-    needed = {region.tissue for region in graph.regions.values()}
+    needed: set[str] = {region.tissue for region in graph.regions.values()}
     for segment in graph.segments.values():
         if segment.pathway in graph.pathways:
             needed.add(f"{graph.pathways[segment.pathway].kind}_{segment.variability}")

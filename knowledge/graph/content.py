@@ -18,7 +18,7 @@ from byway.knowledge.graph.records import (
     Source,
 )
 
-__all__ = ["KINDS", "PLURALS", "Content", "Dispute", "Kind", "Origin", "kind_from"]
+__all__ = ["KINDS", "PLURALS", "Content", "Dispute", "Kind", "Origin", "Retirement", "kind_from"]
 
 Kind = Literal["region", "pathway", "segment", "function", "sign", "claim", "source", "norm"]
 KINDS: tuple[Kind, ...] = get_args(Kind)
@@ -59,10 +59,21 @@ class Dispute:
 
 
 @dataclass(frozen=True)
+class Retirement:
+    """Why and by whom a record was taken out of use."""
+
+    reason: str
+    author: str
+    date: str
+    origin: Origin
+
+
+@dataclass(frozen=True)
 class Content:
     """Records by kind and key, in the order of the curated text, with origins and disputes.
 
-    ``origins`` and ``disputes`` are keyed by ``(kind, key)``. ``layers`` names the layers from the base upward.
+    ``origins``, ``disputes`` and ``retired`` are keyed by ``(kind, key)``. ``layers`` names the layers from the base
+    upward.
     """
 
     regions: Mapping[str, Region]
@@ -76,6 +87,7 @@ class Content:
     origins: Mapping[tuple[Kind, str], Origin] = field(default_factory=dict)
     disputes: Mapping[tuple[Kind, str], tuple[Dispute, ...]] = field(default_factory=dict)
     layers: tuple[str, ...] = ("base",)
+    retired: Mapping[tuple[Kind, str], Retirement] = field(default_factory=dict)
 
     @classmethod
     def of(
@@ -84,10 +96,11 @@ class Content:
         origins: Mapping[tuple[Kind, str], Origin],
         disputes: Mapping[tuple[Kind, str], tuple[Dispute, ...]] | None = None,
         layers: tuple[str, ...] = ("base",),
+        retired: Mapping[tuple[Kind, str], Retirement] | None = None,
     ) -> Self:
         """Content of records held by kind and key; each must be a record of its kind."""
         values: dict[str, Any] = {PLURALS[kind]: found for kind, found in records.items()}
-        return cls(**values, origins=origins, disputes=disputes or {}, layers=layers)
+        return cls(**values, origins=origins, disputes=disputes or {}, layers=layers, retired=retired or {})
 
     def records(self, kind: Kind) -> Mapping[str, Record]:
         """All records of a kind, by key."""

@@ -12,7 +12,7 @@ from typing import Any
 from pydantic import ValidationError
 
 from byway.knowledge.faults import FaultReport, GraphError, nearest
-from byway.knowledge.graph.content import KINDS, Content, Dispute, Kind, Origin
+from byway.knowledge.graph.content import KINDS, Content, Dispute, Kind, Origin, Retirement
 from byway.knowledge.graph.emit import emit_yaml
 from byway.knowledge.graph.grammar import record_faults, to_block, to_record
 from byway.knowledge.graph.overlays import Entry, Overlay
@@ -72,15 +72,16 @@ def apply_overlays(base: Content, overlays: Iterable[Overlay]) -> Content:
     origins = dict(base.origins)
     disputes = dict(base.disputes)
     layers = list(base.layers)
+    retired = dict(base.retired)
     for overlay in overlays:
         if overlay.name in layers:
             report.add("overlay-form", overlay.name, "two layers of this name", "a name for each layer")
         layers.append(overlay.name)
         for entry in overlay.used:
-            _apply(entry, overlay, records, origins, disputes, report)
+            _apply(entry, overlay, records, origins, disputes, retired, report)
     report.raise_if_grave(GraphError)
     _gather_segments(records)
-    return Content.of(records, origins, disputes, tuple(layers))
+    return Content.of(records, origins, disputes, tuple(layers), retired)
 
 
 def diff(older: Content, newer: Content) -> list[Change]:
@@ -99,7 +100,10 @@ def diff(older: Content, newer: Content) -> list[Change]:
             changes += _dispute_changes(kind, key, older, newer)
         for key, record in before.items():
             if key not in after:
-                changes.append(Change("retired", kind, key, f"{kind} {key} retired: {_title(record)}"))
+                gone = newer.retired.get((kind, key))
+                told = f", {gone.reason}{_by(gone.origin.layer)}" if gone else ""
+                words = f"{kind} {key} retired: {_title(record)}{told}"
+                changes.append(Change("retired", kind, key, words, layer=gone.origin.layer if gone else ""))
     # A pathway changes with the list of its segments; the segments' own lines already say it.
     return [change for change in changes if not (change.kind == "pathway" and _only_segments(change))]
 
@@ -126,6 +130,7 @@ def _apply(
     records: Records,
     origins: dict[tuple[Kind, str], Origin],
     disputes: dict[tuple[Kind, str], tuple[Dispute, ...]],
+    retired: dict[tuple[Kind, str], Retirement],
     report: FaultReport,
 ) -> None:
     place = (entry.kind, entry.key)
@@ -145,13 +150,14 @@ def _apply(
             remedy=nearest(entry.key, known) or "check the key",
         )
         return
+    author, date = entry.author or overlay.author, entry.date or overlay.date
     match entry.action:
         case "retire":
+            retired[place] = Retirement(entry.reason, author, date, origin)
             del known[entry.key]
             origins.pop(place, None)
             disputes.pop(place, None)
         case "dispute":
-            author, date = entry.author or overlay.author, entry.date or overlay.date
             dispute = Dispute(entry.reason, author, date, tuple(entry.body.get("sources", ())), origin)
             disputes[place] = (*disputes.get(place, ()), dispute)
         case "add" | "change":
@@ -162,6 +168,7 @@ def _apply(
             if record is not None:
                 known[entry.key] = record
                 origins[place] = origin
+                retired.pop(place, None)
 
 
 def _record(entry: Entry, body: Mapping[str, Any], where: str, report: FaultReport) -> Record | None:

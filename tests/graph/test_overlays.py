@@ -86,9 +86,9 @@ def test_diff_in_words(good: Path) -> None:
     words = [change.words for change in diff(load_graph(folder=SMALL), load_graph([good], folder=SMALL))]
     assert words == [
         "sign weak_hand changed: minutes from 1.0 to 3.0 (Ward)",
-        'claim bow_serves_two_hands added: "The bow serves two hands." (Ward)',
         "claim bow_long_serves_echo disputed by A. Reader: seen otherwise (Ward)",
-        'claim bow_exists retired: "The bow is a bundle."',
+        'claim bow_serves_two_hands added: "The bow serves two hands." (Ward)',
+        'claim bow_exists retired: "The bow is a bundle.", nobody doubts it (Ward)',
         'source local_2026 added: "Local A" (Ward)',
     ]
     back = {change.action for change in diff(load_graph([good], folder=SMALL), load_graph(folder=SMALL))}
@@ -232,8 +232,8 @@ def test_conflicts_are_listed() -> None:
         "retire: {signs: {poor_echo: {reason: y}}}\ndispute: {claims: {bow_exists: {reason: z}}}\n"
     )
     assert [each.words for each in clashes(first, second)] == [
-        "sign weak_hand: minutes is 3 in Ward and 4 in Lab",
         "sign poor_echo: Lab retires what Ward changes",
+        "sign weak_hand: minutes is 3 in Ward and 4 in Lab",
     ]
 
 
