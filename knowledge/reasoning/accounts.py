@@ -11,13 +11,13 @@ import pandas as pd
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.records import Claim
 from byway.knowledge.graph.references import split_reference
-from byway.knowledge.reasoning.attribution import Attribution, Bottleneck, attribute, bottlenecks, setting_of
+from byway.knowledge.reasoning.attribution import Attribution, Bottleneck, attribute, bottlenecks
 from byway.knowledge.reasoning.grouping import AccountKind, Group, Grouping, kind_of
 from byway.knowledge.reasoning.ledger import Ledgers
 from byway.knowledge.reasoning.posterior import Reckoning
 from byway.knowledge.reasoning.remote import remote_table
 from byway.knowledge.reasoning.rerouting import route_flows
-from byway.knowledge.reasoning.scenarios import Scenario
+from byway.knowledge.reasoning.scenarios import Scenario, setting_of
 from byway.knowledge.reasoning.sparing import Sparing, explain_sparing
 from byway.knowledge.reasoning.wording import DEPARTURE_WORDS, in_words, join, list_names
 
@@ -188,16 +188,15 @@ def title_of(graph: Graph, scenario: Scenario, kind: AccountKind, elements: list
     regions = [element for element in elements if split_reference(element)[0] in graph.regions]
     segments = [element for element in elements if element not in regions]
     grey, cut = list_names(graph, regions, 2), list_names(graph, segments, 2)
-    lead = {
-        "cortical_damage": f"Damage of {grey}" if grey else "Damage as drawn",
-        "segment_disconnection": f"Disconnection through {cut}" if cut else "Damage as drawn",
-    }.get(kind, f"Damage of {grey} with disconnection through {cut}" if grey and cut
-          else f"Damage of {grey}" if grey else f"Disconnection through {cut}" if cut else "Damage as drawn")  # fmt: skip
+    parts = [f"damage of {grey}" if grey else "", f"disconnection through {cut}" if cut else ""]
+    if kind == "cortical_damage":
+        parts = parts[:1]
+    elif kind == "segment_disconnection":
+        parts = parts[1:]
+    lead = " with ".join(part for part in parts if part) or "damage as drawn"
     departures = [DEPARTURE_WORDS[each] for each in scenario.departures]
-    if not departures:
-        return lead
-    said = join(departures)
-    return f"{said[0].upper()}{said[1:]}" + (f": {lead[0].lower()}{lead[1:]}" if elements else "")
+    said = f"{join(departures)}{': ' if elements else ''}{lead if elements else ''}" if departures else lead
+    return f"{said[0].upper()}{said[1:]}"
 
 
 def _elements(attribution: Attribution, found: list[str]) -> list[tuple[str, float]]:

@@ -11,10 +11,10 @@ from numpy.typing import NDArray
 from byway.knowledge.graph.networks import FunctionNetwork
 from byway.knowledge.reasoning.posterior import Reckoning
 from byway.knowledge.reasoning.prepared import CopyTable
-from byway.knowledge.reasoning.scenarios import AXES, Scenario
+from byway.knowledge.reasoning.scenarios import Scenario, setting_of
 from byway.knowledge.reasoning.signs import LossCache
 
-__all__ = ["LEAST_SHARE", "Attribution", "Bottleneck", "attribute", "bottlenecks", "setting_of"]
+__all__ = ["LEAST_SHARE", "Attribution", "Bottleneck", "attribute", "bottlenecks"]
 
 Array = NDArray[np.float32]
 
@@ -102,17 +102,6 @@ class Bottleneck:
     capacity: float
     elements: tuple[str, ...]
     damage: Array
-
-
-def setting_of(scenario: Scenario) -> int:
-    """Number of a scenario's setting (dominance, reliance).
-
-    >>> setting_of(Scenario()), setting_of(Scenario(dominance="right", reliance="second"))
-    (0, 3)
-    """
-    return AXES["dominance"].index(scenario.dominance) * len(AXES["reliance"]) + AXES["reliance"].index(
-        scenario.reliance
-    )
 
 
 def attribute(reckoning: Reckoning, scenario: Scenario, signs: tuple[str, ...]) -> Attribution:

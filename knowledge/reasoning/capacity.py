@@ -1,8 +1,9 @@
 """Capacity of a function: the least minimal cut of its network, over thousands of damage states at once.
 
 Every element and every link of a function's network can carry ``load * (1 + headroom)``, an element times one minus
-its damage. The capacity of the function is ``min(1, maximum flow)``, which equals the least summed capacity over the
-minimal cuts (Ford and Fulkerson 1956). Cuts depend on the network alone, so they are enumerated once.
+its damage; so can the ways in and out, where a route starts or ends at an element that other routes pass. The
+capacity of the function is ``min(1, maximum flow)``, which equals the least summed capacity over the minimal cuts
+(Ford and Fulkerson 1956). Cuts depend on the network alone, so they are enumerated once.
 
 Three steps keep the cuts few. Elements that follow each other with no branch between form a *run*, which carries
 what its worst element lets through. A link is left out where an element at one of its ends carries the same load,
@@ -26,6 +27,7 @@ MAX_CUTS = 20_000
 """A network with more minimal cuts than this, in one block, is refused rather than left to hang."""
 
 _SAME_LOAD = 1e-9
+_OUTSIDE = -1
 
 
 @dataclass(frozen=True, eq=False)
@@ -39,7 +41,7 @@ class Block:
     link_loads : (n_cuts,) float32
         Summed usual load of the links that each cut goes through.
     links : tuple of tuple of (int, int)
-        Those links, by element number, for each cut.
+        Those links, by element number, for each cut; -1 stands for outside the network (a way in or out).
     """
 
     run_cuts: NDArray[np.float32]
@@ -167,6 +169,11 @@ def cut_table(network: FunctionNetwork) -> CutTable:
         onward[i].append(j)
         if load < min(network.element_loads[a], network.element_loads[b]) - _SAME_LOAD:
             wide[i, j] = (a, b, load)
+    for element, (enters, leaves) in enumerate(zip(network.source_loads, network.sink_loads, strict=True)):
+        if element in network.sources and enters < network.element_loads[element] - _SAME_LOAD:
+            wide[_OUTSIDE, run_of[element]] = (_OUTSIDE, element, enters)
+        if element in network.sinks and leaves < network.element_loads[element] - _SAME_LOAD:
+            wide[run_of[element], _OUTSIDE] = (element, _OUTSIDE, leaves)
     sources = sorted({run_of[element] for element in network.sources})
     sinks = {run_of[element] for element in network.sinks}
     link_items = {pair: len(runs) + n for n, pair in enumerate(wide)}
@@ -239,7 +246,13 @@ def _paths(
 ) -> list[int]:
     """Every path from a source to a sink, as a bit set of the runs and links that can be cut on it."""
     paths: set[int] = set()
-    stack = [(start, 1 << start) for start in starts]
+
+    def link(here: int, ahead: int) -> int:
+        """Bit of the link between two runs, or of a way in or out, if it can be the narrowest part."""
+        item = link_items.get((here, ahead))
+        return 0 if item is None else 1 << item
+
+    stack = [(start, 1 << start | link(_OUTSIDE, start)) for start in starts]
     steps = 0
     while stack:
         here, met = stack.pop()
@@ -247,10 +260,8 @@ def _paths(
         if steps > 20 * MAX_CUTS:
             _refuse(network, "paths")
         if here in sinks:
-            paths.add(met)
-        for ahead in onward[here]:
-            link = link_items.get((here, ahead))
-            stack.append((ahead, met | 1 << ahead | (0 if link is None else 1 << link)))
+            paths.add(met | link(here, _OUTSIDE))
+        stack += [(ahead, met | 1 << ahead | link(here, ahead)) for ahead in onward[here]]
     return _least(paths)
 
 

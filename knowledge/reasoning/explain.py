@@ -15,7 +15,6 @@ from numpy.typing import NDArray
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.references import split_reference
 from byway.knowledge.reasoning.accounts import Account, build_account, title_of
-from byway.knowledge.reasoning.attribution import setting_of
 from byway.knowledge.reasoning.findings import Finding, check_findings
 from byway.knowledge.reasoning.grouping import PLAIN, Grouping, group_scenarios, kind_of
 from byway.knowledge.reasoning.ledger import ledgers
@@ -23,7 +22,7 @@ from byway.knowledge.reasoning.next_tests import Outlook, next_axes, next_images
 from byway.knowledge.reasoning.posterior import SCENARIOS, Reckoning, reckon
 from byway.knowledge.reasoning.prepared import prepare
 from byway.knowledge.reasoning.remote import remote_table
-from byway.knowledge.reasoning.scenarios import Priors, Scenario, axis_priors, headroom_of
+from byway.knowledge.reasoning.scenarios import Priors, Scenario, axis_priors, headroom_of, setting_of
 from byway.knowledge.reasoning.wording import CAUTION
 
 __all__ = ["Explanation", "Person", "explain_findings"]

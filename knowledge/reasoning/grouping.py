@@ -9,7 +9,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from byway.knowledge.reasoning.posterior import SCENARIOS, SLIP, Reckoning
-from byway.knowledge.reasoning.scenarios import Scenario
+from byway.knowledge.reasoning.scenarios import Scenario, setting_of
+from byway.knowledge.reasoning.signs import combined_capacity
+from byway.knowledge.reasoning.states import state_number
 
 __all__ = ["KINDS", "SAME", "AccountKind", "Group", "Grouping", "grey_share", "group_scenarios", "kind_of"]
 
@@ -23,7 +25,8 @@ SAME = 0.02
 """Scenarios whose sign probabilities differ by less than this, sign by sign, count as predicting the same."""
 
 PLAIN = Scenario(speaks="cortical")
-GREY_ALONE, SEGMENTS_ALONE = 0.75, 0.25  # share of the loss that regions must, or may at most, account for
+MATERIAL = 0.1
+"""Share of the lost capacity from which regions, or segments, count as part of the cause."""
 
 _KIND_BY_DEPARTURE: tuple[tuple[str, AccountKind], ...] = (
     ("outside", "outside_lesion"),
@@ -129,53 +132,51 @@ def regroup(reckoning: Reckoning, groups: list[Group] | tuple[Group, ...]) -> Gr
 
 
 def grey_share(reckoning: Reckoning, sign_ids: list[str], scenario: Scenario) -> float | None:
-    """Share of the loss behind some signs that damage of regions accounts for (segments account for the rest).
+    """Share of the lost capacity behind some signs that damage of regions accounts for; segments have the rest.
 
-    With P(none) and P(all) the summed sign probabilities without damage and with all of it, and P(regions),
-    P(segments) with only one kind: the mean of what regions add first, P(regions) - P(none), and last,
-    P(all) - P(segments); likewise for segments. None where neither adds anything.
+    With L(all), L(regions), L(segments) the lost capacity, summed over the functions of the signs with their weights,
+    when all damage speaks or only one kind: the mean of what regions add first, L(regions), and last,
+    L(all) - L(segments); likewise for segments (Shapley's value for two). Segments alone means what is cut outside
+    the regions at their ends. None where neither adds anything.
     """
-    at = {speaks: SCENARIOS.index(Scenario(**{**vars(scenario), "speaks": speaks}))
-          for speaks in ("both", "cortical", "segments")}  # fmt: skip
-    grey = cut = 0.0
+    setting = setting_of(scenario)
+    states = [state_number(Scenario(**{**vars(scenario), "speaks": speaks}))
+              for speaks in ("both", "cortical", "segments")]  # fmt: skip
+    lost = np.zeros(3)
     for sign_id in sign_ids:
-        expected = reckoning.expected(sign_id)
-        leak = reckoning.model(0, sign_id).leak
-        if scenario.outside == "yes":
-            leak = 1.0 - (1.0 - leak) * (1.0 - reckoning.outside_rates[0])
-        whole, regions, segments = (expected[at[s]] for s in ("both", "cortical", "segments"))
-        grey += max(0.0, (regions - leak) + (whole - segments)) / 2
-        cut += max(0.0, (segments - leak) + (whole - regions)) / 2
-    return grey / (grey + cut) if grey + cut > 1e-3 else None
+        for term in reckoning.model(setting, sign_id).terms:
+            capacity = combined_capacity(reckoning.capacities[setting], term.copies)
+            if capacity is not None:
+                lost += term.weight * (1.0 - capacity[states].mean(axis=1))
+    whole, regions, segments = lost
+    grey = max(0.0, regions + (whole - segments)) / 2
+    cut = max(0.0, segments + (whole - regions)) / 2
+    return float(grey / (grey + cut)) if grey + cut > 1e-3 else None
 
 
 def kind_of(reckoning: Reckoning, group: Group) -> AccountKind:
-    """Kind of an account: its weightiest departure; without one, what the explained loss rests on."""
+    """Kind of an account: its weightiest departure; without one, what the lost capacity rests on.
+
+    Where the plain cortical reading predicts the same as all damage together, nothing else is needed and the kind is
+    cortical damage; where segments alone do, it is disconnection. Otherwise each side must account for a tenth of the
+    lost capacity for the kind to be both.
+    """
     scenario = group.scenario
     departures = dict(scenario.departures)
     for axis, kind in _KIND_BY_DEPARTURE:
         if axis in departures:
             return kind
-    if scenario.speaks == "cortical":
+    if scenario.speaks == "cortical" or SCENARIOS.index(PLAIN) in group.members:
         return "cortical_damage"
-    if scenario.speaks == "segments":
+    if scenario.speaks == "segments" or SCENARIOS.index(Scenario(speaks="segments")) in group.members:
         return "segment_disconnection"
     found = [finding.sign_id for finding in reckoning.findings if finding.present]
     share = grey_share(reckoning, found, scenario)
     if share is None:
         share = grey_share(reckoning, list(reckoning.affected_signs), scenario)
-    if share is None:
-        share = _share_of_damage(reckoning, scenario)
-    if share >= GREY_ALONE:
+    if share is None or share >= 1.0 - MATERIAL:
         return "cortical_damage"
-    return "segment_disconnection" if share <= SEGMENTS_ALONE else "both"
-
-
-def _share_of_damage(reckoning: Reckoning, scenario: Scenario) -> float:
-    """Share of all damage, summed over elements, that lies in regions; 1 where there is none."""
-    damage = reckoning.damage_of(scenario).mean(axis=0)
-    total = float(damage.sum())
-    return float(damage[reckoning.prepared.is_region].sum()) / total if total > 1e-6 else 1.0
+    return "segment_disconnection" if share <= MATERIAL else "both"
 
 
 def _predictions(reckoning: Reckoning) -> NDArray[np.float64]:

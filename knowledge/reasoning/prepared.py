@@ -14,7 +14,7 @@ from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.networks import FunctionNetwork, function_networks
 from byway.knowledge.graph.references import Hemisphere
 from byway.knowledge.reasoning.capacity import CutTable, cut_table
-from byway.knowledge.reasoning.remote import RemoteModel, remote_model
+from byway.knowledge.reasoning.remote import RemoteModel, remote_model, segment_ends
 from byway.knowledge.reasoning.scenarios import AXES, leaning
 from byway.knowledge.reasoning.signs import SignModel, sign_models
 
@@ -47,6 +47,8 @@ class Prepared:
         axis is the same object in both.
     models : dict
         Sign models by language dominance, then by sign id.
+    ends_of : dict
+        Segment number to the numbers of the regions at its ends.
     remote : RemoteModel
         Which region gets input from where.
     """
@@ -57,6 +59,7 @@ class Prepared:
     is_region: NDArray[np.bool_]
     tables: dict[tuple[str, str], dict[str, CopyTable]]
     models: dict[str, dict[str, SignModel]]
+    ends_of: dict[int, tuple[int, ...]]
     remote: RemoteModel
 
     def settings(self) -> Iterator[tuple[str, str]]:
@@ -114,7 +117,12 @@ def _prepare(graph: Graph, element_ids: tuple[str, ...]) -> Prepared:
     if faults:
         raise GraphError(*dict.fromkeys(faults))
     models: dict[str, dict[str, SignModel]] = {each: sign_models(graph, each) for each in hemispheres}
-    return Prepared(graph, element_ids, number, is_region, tables, models, remote_model(graph, element_ids))
+    ends_of = {
+        number[segment]: tuple(number[place] for place in places if place in number)
+        for segment, places in segment_ends(graph).items() if segment in number
+    }  # fmt: skip
+    remote = remote_model(graph, element_ids)
+    return Prepared(graph, element_ids, number, is_region, tables, models, ends_of, remote)
 
 
 def _table(

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 
 from byway.knowledge.graph.graph import Graph
 
-__all__ = ["Connection", "RemoteModel", "remote_model", "remote_table"]
+__all__ = ["Connection", "RemoteModel", "remote_model", "remote_table", "segment_ends"]
 
 Array = NDArray[np.float32]
 
@@ -100,7 +100,7 @@ def remote_model(graph: Graph, element_ids: tuple[str, ...]) -> RemoteModel:
     """
     number = {element: i for i, element in enumerate(element_ids)}
     connections: list[Connection] = []
-    ends = _segment_ends(graph)
+    ends = segment_ends(graph)
     at_place: dict[str, list[str]] = {}
     for element, places in ends.items():
         for place in places:
@@ -186,7 +186,7 @@ def remote_table(model: RemoteModel, graph: Graph, share: NDArray[np.floating], 
     return pd.DataFrame(rows, columns=columns)
 
 
-def _segment_ends(graph: Graph) -> dict[str, tuple[str, str]]:
+def segment_ends(graph: Graph) -> dict[str, tuple[str, str]]:
     """Places (region element ids, or junctions with a side) at the two ends of every segment element."""
     ends = {}
     for key, segment in graph.segments.items():

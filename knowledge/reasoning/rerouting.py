@@ -67,9 +67,9 @@ def flow_graph(network: FunctionNetwork, damage: NDArray[np.floating], headroom:
     for (a, b), load in zip(network.links, network.link_loads, strict=True):
         graph.add_edge(("out", a), ("in", b), capacity=load * (1.0 + headroom))
     for i in network.sources:
-        graph.add_edge("source", ("in", i))
+        graph.add_edge("source", ("in", i), capacity=network.source_loads[i] * (1.0 + headroom))
     for i in network.sinks:
-        graph.add_edge(("out", i), "sink")
+        graph.add_edge(("out", i), "sink", capacity=network.sink_loads[i] * (1.0 + headroom))
     return graph
 
 
@@ -117,12 +117,11 @@ def _least_cost_flow(
         usual[("in", i), ("out", i)] = load
     for (a, b), load in zip(network.links, network.link_loads, strict=True):
         usual[("out", a), ("in", b)] = load
+    usual |= {("source", ("in", i)): network.source_loads[i] for i in network.sources}
+    usual |= {(("out", i), "sink"): network.sink_loads[i] for i in network.sinks}
     graph = nx.DiGraph()
     graph.add_edge("start", "source", capacity=_SCALE, weight=0)
     for a, b, data in plain.edges(data=True):
-        if "capacity" not in data:
-            graph.add_edge(a, b, capacity=2 * _SCALE, weight=0)
-            continue
         capacity = round(data["capacity"] * _SCALE)
         within = min(capacity, round(usual[a, b] * _SCALE))
         graph.add_edge(a, b, capacity=within, weight=0)

@@ -26,6 +26,7 @@ __all__ = [
     "headroom_of",
     "leaning",
     "prior_vector",
+    "setting_of",
 ]
 
 AXES: dict[str, tuple[str, ...]] = {
@@ -48,6 +49,10 @@ SLOW_CAUSES = frozenset({"low_grade_tumour", "meningioma", "degeneration", "dege
 """Causes that grow over months to years, so that function had time to move."""
 
 
+PASSING_CAUSES = frozenset({"infarct", "haemorrhage", "trauma", "surgery", "resection"})
+"""Causes whose swelling and threatened rim come at once and then pass."""
+
+
 @dataclass(frozen=True)
 class Scenario:
     """One answer to everything that the scan does not tell.
@@ -61,7 +66,8 @@ class Scenario:
     outside : {'no', 'yes'}
         Whether part of the findings has a cause outside the lesion.
     speaks : {'both', 'cortical', 'segments'}
-        Which of the damage shows: all of it, that of grey regions only, or that of segments only.
+        Which of the damage shows: all of it, that of grey regions only, or that of segments only (what is cut
+        outside the regions at their ends).
     perilesional : {'no', 'yes'}
         Whether a rim around the lesion is out of action.
     remote : {'no', 'yes'}
@@ -124,6 +130,8 @@ def axis_priors(graph: Graph, handedness: str, stage: str, cause: str, overrides
     members = by_cause.value if by_cause is not None and isinstance(by_cause.value, dict) else {}
     right = graph.norm("language_dominance_right", handedness)
     perilesional = graph.norm("scenario_prior_perilesional", cause if cause in members else "other")
+    if cause in PASSING_CAUSES:
+        perilesional *= graph.norm("perilesional_kept_by_stage", stage)
     remote = graph.norm("scenario_prior_remote", remote_stage)
     outside = graph.norm("scenario_prior_outside")
     priors: AxisPriors = {
@@ -154,6 +162,17 @@ def headroom_of(graph: Graph, stage: str, cause: str) -> float:
     """Share by which an intact element can carry more than its usual load, by stage; more for slowly growing causes."""
     usual = graph.norm("headroom", stage)
     return max(usual, graph.norm("headroom", "slow_growing")) if cause in SLOW_CAUSES and stage != "acute" else usual
+
+
+def setting_of(scenario: Scenario) -> int:
+    """Number of a scenario's setting (dominance, reliance).
+
+    >>> setting_of(Scenario()), setting_of(Scenario(dominance="right", reliance="second"))
+    (0, 3)
+    """
+    return AXES["dominance"].index(scenario.dominance) * len(AXES["reliance"]) + AXES["reliance"].index(
+        scenario.reliance
+    )
 
 
 def leaning(network: FunctionNetwork, second_load: float) -> FunctionNetwork | None:

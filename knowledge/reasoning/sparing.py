@@ -6,11 +6,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from byway.knowledge.reasoning.attribution import setting_of
 from byway.knowledge.reasoning.findings import Finding
 from byway.knowledge.reasoning.posterior import Reckoning
 from byway.knowledge.reasoning.rerouting import route_flows
-from byway.knowledge.reasoning.scenarios import Scenario
+from byway.knowledge.reasoning.scenarios import Scenario, setting_of
 from byway.knowledge.reasoning.wording import join, list_names
 
 __all__ = ["Sparing", "explain_sparing"]

@@ -13,7 +13,7 @@ from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.reasoning.prepared import CopyTable, Prepared
 from byway.knowledge.reasoning.scenarios import AXES, Scenario
 
-__all__ = ["STATES", "STATE_AXES", "TOUCHED", "DamageStates", "damage_states", "state_number"]
+__all__ = ["STATES", "STATE_AXES", "TOUCHED", "DamageStates", "cut_outside_ends", "damage_states", "state_number"]
 
 Array = NDArray[np.float32]
 
@@ -98,7 +98,7 @@ def damage_states(prepared: Prepared, draws: Mapping[str, NDArray[np.floating]])
     n_elements, _, n_draws = stacked.shape
     spoken: dict[str, Array] = {"both": stacked}
     spoken["cortical"] = stacked * prepared.is_region[:, None, None]
-    spoken["segments"] = stacked * ~prepared.is_region[:, None, None]
+    spoken["segments"] = cut_outside_ends(prepared, stacked)
     silenced = {value: prepared.remote.silenced(damage.reshape(n_elements, -1)) for value, damage in spoken.items()}
     touched = set(np.flatnonzero(stacked.any(axis=(1, 2))).tolist()).union(*silenced.values())
     rows = {int(element): row for row, element in enumerate(sorted(touched))}
@@ -112,6 +112,31 @@ def damage_states(prepared: Prepared, draws: Mapping[str, NDArray[np.floating]])
         for element, extended in silenced[value].items():
             damage[rows[element], s, :, 1] = extended.reshape(shape[1], shape[3], n_draws)
     return DamageStates(rows, damage.reshape(len(rows), len(STATES), n_draws))
+
+
+def cut_outside_ends(prepared: Prepared, damage: Array) -> Array:
+    """Damage of segments beyond what the loss of the regions at their ends implies; regions count as intact.
+
+    Streamlines end inside the regions that they join, so a region that is partly lost takes about that share of them
+    with it: that is damage of grey matter, not a cut. With ``a`` and ``b`` the lost shares of the two ends, what is
+    cut elsewhere is ``1 - (1 - severed) / ((1 - a) * (1 - b))``, never below 0.
+
+    Parameters
+    ----------
+    damage : (n_elements, ...) float32
+        Damage of all elements in [0, 1], element-major.
+    """
+    outside = np.zeros_like(damage)
+    for segment, ends in prepared.ends_of.items():
+        severed = damage[segment]
+        if not severed.any():
+            continue
+        left = np.ones_like(severed)
+        for region in ends:
+            left *= np.float32(1.0) - damage[region]
+        kept = (np.float32(1.0) - severed) / np.maximum(left, np.float32(1e-6))
+        outside[segment] = np.clip(np.float32(1.0) - kept, 0.0, 1.0)
+    return outside
 
 
 def _variants(prepared: Prepared, draws: Mapping[str, NDArray[np.floating]]) -> dict[str, Array]:
