@@ -3,14 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
+from functools import cached_property
 from typing import Any
 
+import numpy as np
 import traitlets as t
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.geometry import Geometry
 from byway.widgets.state.drawing import Change, Drawing, Settings, Style
 from byway.widgets.state.edits import apply_edit, voxels_edit
+from byway.widgets.state.elements import ElementMap
 from byway.widgets.state.resting import Resting
 from byway.widgets.state.scans import Scans
 from byway.widgets.state.science import NoScience, Science
@@ -107,6 +112,15 @@ class BenchState(t.HasTraits):
     def geometry(self) -> Geometry | None:
         """Geometry of all elements, or None."""
         return self.science.geometry
+
+    @cached_property
+    def elements(self) -> ElementMap | None:
+        """Elements by voxel, or None without geometry."""
+        return ElementMap.build(self.science.index) if self.science.index is not None else None
+
+    def map_of(self, kind: str) -> NDArray[np.uint8] | None:
+        """A map over the grid, 0 to 255: ``uncharted`` or ``chance`` (of being hit); None where it is not known."""
+        return self.science.map_of(kind, self.lesion, self.ensemble)
 
     # -- the drawing ------------------------------------------------------------------------------------------------
 

@@ -11,11 +11,12 @@ from dataclasses import dataclass, replace
 from typing import Any, cast
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Compartment, CompartmentKind, Lesion
 from byway.knowledge.space.grid import TEMPLATE_GRID, Grid
 from byway.widgets.state.history import History, Step
-from numpy.typing import NDArray
 
 __all__ = ["MOST_COMPARTMENTS", "Box", "Change", "Drawing", "Settings", "Style"]
 

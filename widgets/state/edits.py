@@ -12,13 +12,14 @@ from dataclasses import replace
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault, nearest
 from byway.knowledge.lesion.shapes import ellipsoid_mask
 from byway.widgets.state.drawing import MOST_COMPARTMENTS, Change, Drawing, Style
 from byway.widgets.state.history import packed_indices, unpacked_indices
 from byway.widgets.state.raster import polygon_voxels, stroke_voxels
 from byway.widgets.state.scans import Scans
-from numpy.typing import NDArray
 
 __all__ = ["EDITS", "apply_edit", "voxels_edit"]
 

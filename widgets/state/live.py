@@ -6,8 +6,12 @@ from collections.abc import Callable
 from functools import cached_property
 from typing import Any
 
+import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.cases.desk import Desk, desk_for
 from byway.knowledge.damage.ensemble import EnsembleSettings, ensemble
+from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.point import point_damage
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.lesion.lesion import Lesion
@@ -42,6 +46,11 @@ class LiveScience:
         """Geometry of all elements of that graph."""
         return self.desk.template.geometry
 
+    @property
+    def index(self) -> DamageIndex:
+        """The damage index of that geometry."""
+        return self.desk.index
+
     @cached_property
     def names(self) -> dict[str, str]:
         """Names of regions, segments, functions and signs by bare key."""
@@ -52,6 +61,10 @@ class LiveScience:
     def damage(self, lesion: Lesion) -> Any:
         """Point damage of every element."""
         return point_damage(lesion, self.desk.index)
+
+    def map_of(self, kind: str, lesion: Lesion, ensemble: Any) -> NDArray[np.uint8] | None:
+        """A map over the grid, 0 to 255; see :class:`~byway.widgets.state.science.Science`."""
+        return None
 
     def explain(
         self, lesion: Lesion, damage: Any, case: Any, findings: Any, check: Callable[[], None]

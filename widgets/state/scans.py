@@ -10,9 +10,10 @@ from collections.abc import Iterator
 from dataclasses import dataclass, field
 
 import numpy as np
+from numpy.typing import NDArray
+
 from byway.knowledge.faults import BywayError, Fault, nearest
 from byway.knowledge.space.template import template_volume
-from numpy.typing import NDArray
 
 __all__ = ["TEMPLATE", "Scan", "Scans", "quantised"]
 
@@ -91,7 +92,7 @@ class Scans:
 
     def __init__(self) -> None:
         stored = np.rint(template_volume("t1") * 255).astype(np.uint8)
-        self._scans = {TEMPLATE: Scan(TEMPLATE, "MNI152 2009", "t1", stored, 1.0, 0.0, (0.0, 235.0))}
+        self._scans = {TEMPLATE: Scan(TEMPLATE, "MNI152 2009", "t1", stored, 1.0, 0.0, (0.0, 262.0))}
 
     def __iter__(self) -> Iterator[Scan]:
         return iter(self._scans.values())

@@ -5,6 +5,10 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any, Protocol
 
+import numpy as np
+from numpy.typing import NDArray
+
+from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.geometry import Geometry
 
@@ -23,6 +27,10 @@ class Science(Protocol):
         """Geometry of all elements, or None."""
 
     @property
+    def index(self) -> DamageIndex | None:
+        """The damage index, or None."""
+
+    @property
     def names(self) -> dict[str, str]:
         """Names of regions, segments, functions and signs by bare key."""
 
@@ -34,12 +42,16 @@ class Science(Protocol):
     ) -> tuple[Any, Any]:
         """The ensemble and the explanation; calls ``check`` between parts, which may raise to stop it."""
 
+    def map_of(self, kind: str, lesion: Lesion, ensemble: Any) -> NDArray[np.uint8] | None:
+        """A map over the grid, 0 to 255: ``uncharted`` white matter, ``chance`` of being hit; None if not known."""
+
 
 class NoScience:
     """Draws without reasoning: no geometry, no graph."""
 
     graph: Any = None
     geometry: Geometry | None = None
+    index: DamageIndex | None = None
     names: dict[str, str] = {}  # noqa: RUF012 - nothing writes to it
 
     def damage(self, lesion: Lesion) -> Any:
@@ -51,3 +63,7 @@ class NoScience:
     ) -> tuple[Any, Any]:
         """Nothing is known."""
         return None, None
+
+    def map_of(self, kind: str, lesion: Lesion, ensemble: Any) -> NDArray[np.uint8] | None:
+        """Nothing is known."""
+        return None
