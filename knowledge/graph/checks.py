@@ -70,7 +70,7 @@ NORMS: dict[str, tuple[str, ...]] = {
 }
 EXCLUSIVE = ("scenario_prior_speaks", "scenario_prior_boundary", "scenario_prior_reliance")
 WORD = re.compile(r"[a-z][a-z0-9]*(_[a-z0-9]+)*")
-# What may stand as subject and object of each relation; an empty tuple of objects leaves the object free.
+# What may stand as subject and object of each relation; an empty tuple lets any of these kinds stand there.
 RELATIONS: dict[str, tuple[tuple[Kind, ...], tuple[Kind, ...]]] = {
     "serves": (("region", "segment", "pathway"), ("function",)),
     "shows_as": (("function",), ("sign",)),
@@ -277,12 +277,10 @@ def _check_claim(claim: Claim, kinds: Mapping[str, list[Kind]], graph: Content, 
     allowed = dict(zip(("subject", "object"), RELATIONS[claim.relation], strict=True))
     for end, fitting in allowed.items():
         key: str = getattr(claim, end)
-        if not fitting:
-            continue
         if key not in kinds:
-            near = nearest(key, (each for each, its in kinds.items() if set(its) & set(fitting)))
+            near = nearest(key, (each for each, its in kinds.items() if not fitting or set(its) & set(fitting)))
             report.add("unknown-key", where, f"{end} {key!r} is not there", remedy=near or "check the key")
-        elif not set(kinds[key]) & set(fitting):
+        elif fitting and not set(kinds[key]) & set(fitting):
             found = f"{end} {key} is a {kinds[key][0]}"
             report.add("claim-kinds", where, found, f"a {' or '.join(fitting)} ({claim.relation})", "change it")
 
