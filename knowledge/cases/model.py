@@ -5,9 +5,10 @@ Coordinates are MNI mm in the template's space; volumes named by ``file`` lie be
 
 from __future__ import annotations
 
+import datetime
 from typing import Annotated, Any, Literal
 
-from pydantic import BaseModel, ConfigDict, Field, model_validator
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, model_validator
 
 __all__ = [
     "SCHEMA_VERSION",
@@ -27,6 +28,8 @@ SCHEMA_VERSION = 1
 
 Point = tuple[float, float, float]
 Share = Annotated[float, Field(ge=0.0, le=1.0)]
+# YAML reads an unquoted 2026-11-03 as a date; people write it so.
+Day = Annotated[str, BeforeValidator(lambda v: v.isoformat() if isinstance(v, datetime.date) else v), Field(max_length=40)]
 Millimetre = Annotated[float, Field(ge=0.0, le=100.0)]
 
 
@@ -92,7 +95,7 @@ class FindingSpec(_Block):
     side: Literal["left", "right", "none"] = "none"
     grade: Literal["absent", "mild", "moderate", "severe"]
     test: str | None = None
-    date: str | None = None
+    date: Day | None = None
     by: str | None = None
 
 
@@ -116,7 +119,7 @@ class ScanSpec(_Block):
 class VisitSpec(_Block):
     """A later time point: what was found then, and the lesion then where it was drawn anew."""
 
-    date: Annotated[str, Field(min_length=1, max_length=40)]
+    date: Day
     stage: Literal["acute", "subacute", "chronic"]
     lesion: LesionSpec | None = None
     findings: tuple[FindingSpec, ...] = ()
