@@ -27,6 +27,7 @@ ROOMS = (
     "byway.widgets.words",
     "byway.widgets.front",
     "byway.widgets.wire",
+    "byway.widgets.numbers",
     "byway.widgets.state",
     "byway.widgets.panel",
     "byway.widgets.slices",

@@ -60,6 +60,7 @@ class Panel(anywidget.AnyWidget):
     def __init__(self, source: Any, **traits: Any) -> None:
         self.state = state_of(source)
         self._watched: list[tuple[Callable[[Any], None], list[str]]] = []
+        self._link: Any = None
         super().__init__(words=section("shared", "panel", *self.sections), selected=self.state.selected, **traits)
         self._link = t.link((self.state, "selected"), (self, "selected"))
         self.on_msg(self._heard)
@@ -86,7 +87,8 @@ class Panel(anywidget.AnyWidget):
         for heard, names in self._watched:
             self.state.unobserve(heard, names)
         self._watched.clear()
-        self._link.unlink()
+        if self._link is not None:
+            self._link.unlink()
         super().close()
 
     def _heard(self, _: Any, content: Any, buffers: Any) -> None:

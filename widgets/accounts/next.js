@@ -1,9 +1,18 @@
 // What to do next: tests and images that would tell the accounts apart, in bits, with their burden.
-import { fixed, h, number } from "../front/kit.js";
+import { fixed, h, number, percent } from "../front/kit.js";
 import { chip, signName } from "./parts.js";
 
 function bitsBar(bits, most) {
   return h("span", { class: "bw-bits", "aria-hidden": "true" }, h("i", { style: `width:${(bits / most) * 100}%` }));
+}
+
+/** Which account would lead after an outcome, by its number and title, and how likely it would then be. */
+function leader(row, outcome, words) {
+  const rank = row[`rank_if_${outcome}`];
+  const chance = number(`next_tests/${row.sign}@${row.side}/p_if_${outcome}`, row[`p_if_${outcome}`], percent(row[`p_if_${outcome}`]));
+  const title = row[`if_${outcome}`];
+  if (rank === 0) return h("span", { title }, h("span", { class: "bw-rank-tag" }, "1"), " ", words.still_leads, ", ", chance);
+  return h("span", {}, rank === null ? null : [h("span", { class: "bw-rank-tag" }, rank + 1), " "], title, ", ", chance);
 }
 
 /** Untested signs, most telling first. */
@@ -18,7 +27,7 @@ export function nextTests(rows, words) {
         return h("tr", {}, h("th", { scope: "row" }, signName(row, words)), h("td", { class: "bw-bits-cell" }, bitsBar(row.bits, most)),
           h("td", { class: "bw-right" }, number(`${path}/bits`, row.bits, fixed(row.bits, 2))),
           h("td", { class: "bw-right" }, number(`${path}/minutes`, row.minutes, fixed(row.minutes, 0)), ` ${words.min}`),
-          h("td", {}, row.if_present), h("td", {}, row.if_absent));
+          h("td", {}, leader(row, "present", words)), h("td", {}, leader(row, "absent", words)));
       })))];
 }
 

@@ -28,11 +28,12 @@ function render({ model, el }) {
   const { panel, body, foot } = frame(el, words, "accounts", busy);
   const strip = h("div", { class: "bw-strip", role: "group", "aria-label": words.strip_label });
   const cards = h("div", { class: "bw-cards" });
+  const others = h("p", { class: "bw-soft bw-others" });
   const more = h("button", { type: "button", class: "bw-button bw-more", onclick: () => { all = !all; draw(); } });
   const empty = h("p", { class: "bw-empty" }, words.nothing);
   const tests = h("section", { class: "bw-next", "aria-label": words.next_tests });
   const images = h("section", { class: "bw-next", "aria-label": words.next_images });
-  body.append(h("p", { class: "bw-lead bw-soft" }, words.lead), strip, cards, more, empty, tests, images);
+  body.append(h("p", { class: "bw-lead bw-soft" }, words.lead), strip, cards, others, more, empty, tests, images);
   const uncharted = number();
   foot.append(h("p", {}, uncharted, " ", words.uncharted), h("p", {}, words.anatomy_note));
   let all = false;
@@ -60,6 +61,9 @@ function render({ model, el }) {
       first = false;
     }
     strip.hidden = accounts.length < 2;
+    strip.style.paddingRight = `${Math.min(40, Math.max(0, (told.other_posterior || 0) * 100))}%`;
+    redo(others, [told.other_posterior, accounts.length], ([left]) => (left > 0.0005
+      ? [number("other_posterior", left, percent(left)), ` ${words.others}`] : []));
     more.hidden = accounts.length <= few.length && !all;
     say(more, all ? words.show_fewer : fill(words.show_all, { count: accounts.length }));
     empty.hidden = accounts.length > 0;

@@ -14,6 +14,7 @@ __all__ = ["profile_rows", "told_of"]
 MOST_ELEMENTS = 8
 MOST_CHANGES = 12
 MOST_NEXT = 8
+LEAST_BITS = 0.005
 
 
 def told_of(explanation: Any, graph: Any) -> dict[str, Any]:
@@ -30,7 +31,8 @@ def told_of(explanation: Any, graph: Any) -> dict[str, Any]:
     accounts = [_account(account, i, graph) for i, account in enumerate(explanation.accounts)]
     return {
         "accounts": plain(accounts),
-        "next_tests": plain(_next_tests(explanation.next_tests)),
+        "other_posterior": plain(explanation.other_posterior),
+        "next_tests": plain(_next_tests(explanation)),
         "next_images": plain(_next_images(explanation.next_images, graph)),
         "uncharted_share": plain(explanation.uncharted_share),
     }
@@ -81,8 +83,13 @@ def _changes(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:
     return rows
 
 
-def _next_tests(table: pd.DataFrame) -> list[dict[str, Any]]:
-    return _rows(table.head(MOST_NEXT))
+def _next_tests(explanation: Any) -> list[dict[str, Any]]:
+    """Tests that tell something, with the rank of the account that would lead after each outcome."""
+    rank = {account.title: i for i, account in reversed(list(enumerate(explanation.accounts)))}
+    table = explanation.next_tests
+    rows = _rows(table[table["bits"] >= LEAST_BITS].head(MOST_NEXT))
+    return [{**row, "rank_if_present": rank.get(row["if_present"]), "rank_if_absent": rank.get(row["if_absent"])}
+            for row in rows]  # fmt: skip
 
 
 def _next_images(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:

@@ -59,6 +59,7 @@ export function setNumber(node, name, value, text) {
   const known = value !== null && value !== undefined && !Number.isNaN(value);
   mark(node, "data-name", known ? name : null);
   mark(node, "data-value", known ? value : null);
+  mark(node, "title", known ? name : null);
   return say(node, known ? text : "–");
 }
 

@@ -11,7 +11,7 @@ export function places(nodes, domains) {
   for (const node of nodes) {
     if (node.kind === "region" || node.kind === "segment") {
       const r = node.kind === "region" ? 1 : 0.86;
-      at.set(node.key, [((node.y + 18) / 100) * 0.5 * r, (-(node.z - 12) / 100) * 0.5 * r]);
+      at.set(node.key, [(-(node.y + 18) / 100) * 0.66 * r, (-(node.z - 8) / 100) * 0.66 * r]);
     } else {
       const key = `${node.kind} ${node.domain}`;
       const i = counts.get(key) || 0;

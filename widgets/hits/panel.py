@@ -45,7 +45,7 @@ class HitsPanel(Panel):
         damage = self.state.damage
         if damage is None:
             return
-        self._send(values_of(damage), elements_of(damage.index.geometry, self.state.science.names), None)
+        self._show_rows(values_of(damage), elements_of(damage.index.geometry, self.state.science.names), None)
 
     def show_settled(self) -> None:
         """Estimates with their intervals, once the hand rests."""
@@ -56,9 +56,9 @@ class HitsPanel(Panel):
         table = explanation.damage
         elements = [list(row) for row in table[["element", "kind", "name", "side", "anatomy"]].itertuples(index=False)]
         columns = table[["share", "low", "high", "overlap_ml", "clearance_mm"]]
-        self._send(columns.to_numpy(np.float32), elements, explanation.uncharted_share)
+        self._show_rows(columns.to_numpy(np.float32), elements, explanation.uncharted_share)
 
-    def _send(self, values: NDArray[np.float32], elements: list[list[str]], uncharted: float | None) -> None:
+    def _show_rows(self, values: NDArray[np.float32], elements: list[list[str]], uncharted: float | None) -> None:
         with self.hold_sync():
             if elements != self.elements:
                 self.elements = elements

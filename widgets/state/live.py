@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from byway.knowledge.cases.desk import Desk, desk_for
+from byway.knowledge.damage.coverage import uncharted_map, uncharted_share
 from byway.knowledge.damage.ensemble import EnsembleSettings, ensemble
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.point import point_damage
@@ -62,9 +63,9 @@ class LiveScience:
         """Point damage of every element."""
         return point_damage(lesion, self.desk.index)
 
-    def map_of(self, kind: str, lesion: Lesion, ensemble: Any) -> NDArray[np.uint8] | None:
+    def map_of(self, kind: str) -> NDArray[np.uint8] | None:
         """A map over the grid, 0 to 255; see :class:`~byway.widgets.state.science.Science`."""
-        return None
+        return uncharted_map(self.desk.index).view(np.uint8) * np.uint8(255) if kind == "uncharted" else None
 
     def explain(
         self, lesion: Lesion, damage: Any, case: Any, findings: Any, check: Callable[[], None]
@@ -79,7 +80,8 @@ class LiveScience:
         check()
         spec = case.spec
         explanation = explain_findings(
-            self.graph, drawn, damage, spec.person, spec.stage, spec.cause, findings, priors=spec.priors,
+            self.graph, drawn, damage, spec.person, spec.stage, spec.cause, findings, priors=spec.priors or None,
             damage_table=damage.table(drawn.interval(), names=self.names),
+            uncharted_share=uncharted_share(lesion, self.desk.index),
         )  # fmt: skip
         return drawn, explanation
