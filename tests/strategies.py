@@ -4,14 +4,18 @@ from __future__ import annotations
 
 from typing import Any
 
+import numpy as np
 from hypothesis import strategies as st
+from hypothesis.extra import numpy as hnp
 
 from byway.knowledge.graph.content import Kind
 from byway.knowledge.graph.grammar import to_block
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.overlays import ACTIONS, Action
+from byway.knowledge.lesion.lesion import Compartment, Lesion
+from byway.knowledge.lesion.shapes import ellipsoid_mask
 
-__all__ = ["edit_wishes", "plain_mappings", "texts"]
+__all__ = ["edit_wishes", "ellipsoids", "lesions", "plain_mappings", "small_masks", "texts"]
 
 # Words that some readers of YAML take for switches, numbers, times, or marks.
 AWKWARD = ("no", "on", "null", "~", "", "12:30", "2026-12-01", "1e3", "0x1f", "1_000", ".5", "- a", "a: b", "#x", "<<")
@@ -61,3 +65,21 @@ def _spoilt(value: Any) -> st.SearchStrategy[Any]:
     if isinstance(value, list):
         return st.one_of(st.just(value[::-1]), st.just(value[:1]), st.just([]), st.just(value + value))
     return st.one_of(st.just({}), plain_mappings)
+
+
+@st.composite
+def ellipsoids(draw: st.DrawFn, most_mm: float = 25.0) -> np.ndarray:
+    """Mask of an ellipsoid whose centre lies in the brain's bounds, on voxel centres or between them."""
+    axis = st.one_of(st.integers(-55, 55).map(float), st.floats(-55, 55))
+    centre = (draw(axis), draw(axis) - 15, draw(axis) / 2 + 15)
+    return ellipsoid_mask(centre, draw(st.tuples(*[st.floats(2, most_mm)] * 3)))
+
+
+@st.composite
+def lesions(draw: st.DrawFn) -> Lesion:
+    """One to three compartments of any effect, which may overlap."""
+    effects = draw(st.lists(st.floats(0, 1, width=32), min_size=1, max_size=3))
+    return Lesion(tuple(Compartment(f"part {i}", "other", e, draw(ellipsoids())) for i, e in enumerate(effects)))
+
+
+small_masks = hnp.arrays(bool, st.tuples(*[st.integers(1, 9)] * 3))

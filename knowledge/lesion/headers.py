@@ -22,7 +22,7 @@ __all__ = ["MOST_BYTES", "MOST_VOXELS_ALONG", "OpenedImage", "box_mm", "open_ima
 
 MOST_VOXELS_ALONG = 2048
 MOST_BYTES = 1_600_000_000  # a 512 x 512 x 760 scan in 64-bit floats
-_BEYOND_MM = 30.0
+_BEYOND_MM = 40.0
 _WANTED = "a NIfTI file (.nii or .nii.gz)"
 _GZIP, _DICOM = b"\x1f\x8b", b"DICM"
 _KINDS = "iuf"

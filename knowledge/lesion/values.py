@@ -12,6 +12,7 @@ __all__ = ["Values", "survey"]
 
 _SLAB_VOXELS = 4_000_000
 _MOST_DISTINCT = 4096
+_WHOLE = 1e-5
 
 
 @dataclass(frozen=True)
@@ -65,13 +66,14 @@ def survey(voxels: NDArray[Any], slope: float = 1.0, inter: float = 0.0) -> Valu
                 slab = slab[finite]
         if slab.size == 0:
             continue
-        ends = float(slab.min()) * slope + inter, float(slab.max()) * slope + inter
+        ends = _told(float(slab.min()) * slope + inter), _told(float(slab.max()) * slope + inter)
         least, most = min(least, *ends), max(most, *ends)
         background = _stored_zero(slope, inter, slab.dtype)
         other = slab if background is None else slab[slab != background]
         nonzero += int(other.size)
         if slab.dtype.kind == "f" or slope % 1 or inter % 1:
-            whole = whole and bool((np.mod(other.astype(np.float64) * slope + inter, 1) == 0).all())
+            told = other.astype(np.float64) * slope + inter
+            whole = whole and bool((np.abs(told - np.rint(told)) < _WHOLE).all())
         if seen is not None and other.size:
             seen = _counted(other, seen)
     if seen is None or broken:
@@ -79,7 +81,7 @@ def survey(voxels: NDArray[Any], slope: float = 1.0, inter: float = 0.0) -> Valu
     counts: dict[float, int] = {}
     stored: dict[float, list[Any]] = {}
     for raw in sorted(seen, key=lambda raw: float(raw) * slope + inter):
-        value = float(raw) * slope + inter
+        value = _told(float(raw) * slope + inter)
         counts[value] = counts.get(value, 0) + seen[raw]
         stored.setdefault(value, []).append(raw)
     return Values(least, most, broken, nonzero, counts, stored, whole)
@@ -92,8 +94,14 @@ def _stored_zero(slope: float, inter: float, dtype: np.dtype[Any]) -> Any:
     zero = -inter / slope
     if dtype.kind == "f":
         return dtype.type(zero)
-    limits = np.iinfo(dtype)
-    return dtype.type(int(zero)) if zero == int(zero) and limits.min <= zero <= limits.max else None
+    limits, nearest = np.iinfo(dtype), round(zero)
+    is_zero = _told(nearest * slope + inter) == 0 and limits.min <= nearest <= limits.max
+    return dtype.type(nearest) if is_zero else None
+
+
+def _told(value: float) -> float:
+    """A value, or the whole number that it misses only because headers keep slopes in single precision."""
+    return float(round(value)) if abs(value - round(value)) < _WHOLE else value
 
 
 def _counted(values: NDArray[Any], seen: dict[Any, int]) -> dict[Any, int] | None:
