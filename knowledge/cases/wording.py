@@ -56,7 +56,7 @@ def _account_lines(rank: int, account: Account) -> list[str]:
         if signs:
             lines.append(f"   {label}: {_names(f'{s.name} ({s.p_sign:.2f})' for s in signs)}")
     for words in account.bottlenecks["words"].head(3):
-        lines.append(f"   {words}")
+        lines.append(f"   {words.partition('; ')[0]}")
     return lines
 
 

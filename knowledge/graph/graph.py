@@ -62,7 +62,7 @@ class Graph(Content):
         bare, side = split_reference(key)
         record = self.records(self.kind_of(key))[bare]
         if isinstance(record, Segment):
-            name = f"{self.pathways[record.pathway].name}, {record.name}"
+            name = f"{self.pathways[record.pathway].name}, {_within_a_name(record.name)}"
         elif isinstance(record, Claim):
             name = record.says
         elif isinstance(record, Source):
@@ -304,3 +304,8 @@ class Graph(Content):
 def graph_from(content: Content) -> Graph:
     """The typed graph of some content."""
     return Graph(**{each.name: getattr(content, each.name) for each in fields(content)})
+
+
+def _within_a_name(name: str) -> str:
+    """A name as the second part of a longer one: its first letter small, unless it begins a letter word."""
+    return name[:1].lower() + name[1:] if name[1:2].islower() else name
