@@ -280,8 +280,6 @@ def test_more_than_one_volume(tmp_path):
     data = np.stack([ball(), ball()], axis=-1).astype(np.uint8)
     words = refusal(saved(tmp_path / "two.nii.gz", data))
     assert "2 volumes (197 x 233 x 189 x 2); expected one three-dimensional volume" in words
-        saved(tmp_path / "two.nii.gz", data)
-    )
     one = read_lesion(saved(tmp_path / "one.nii.gz", data[..., :1]))
     np.testing.assert_array_equal(one.mask, ball())
 
