@@ -62,7 +62,9 @@ class Graph(Content):
         bare, side = split_reference(key)
         record = self.records(self.kind_of(key))[bare]
         if isinstance(record, Segment):
-            name = f"{self.pathways[record.pathway].name} ({_within_a_name(record.name)})"
+            pathway = self.pathways[record.pathway]
+            alone = len(pathway.segments) == 1
+            name = pathway.name if alone else f"{pathway.name} ({_within_a_name(record.name)})"
         elif isinstance(record, Claim):
             name = record.says
         elif isinstance(record, Source):

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.references import split_reference
 
-__all__ = ["CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_words", "join", "list_names", "share_words"]
+__all__ = ["CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_a_sentence", "in_words", "join", "list_names", "share_words"]
 
 CAUTION = (
     "This supports reasoning and research; it is no diagnosis. Local protocols and licensed practice decide."
@@ -57,17 +57,33 @@ def join(parts: Sequence[str], last: str = "and") -> str:
     return f"{', '.join(parts[:-1])} {last} {parts[-1]}"
 
 
+def in_a_sentence(name: str) -> str:
+    """A name as it stands within a sentence: its first letter small, unless it is somebody's or a letter word.
+
+    >>> in_a_sentence("Arcuate fasciculus"), in_a_sentence("Heschl's gyrus"), in_a_sentence("MT")
+    ('arcuate fasciculus', "Heschl's gyrus", 'MT')
+    """
+    first = name.partition(" ")[0]
+    return name if first.endswith("'s") or not name[1:2].islower() else name[0].lower() + name[1:]
+
+
 def list_names(graph: Graph, elements: Sequence[str], most: int = 3) -> str:
     """Names of elements; those of one side share the side word.
 
-    >>> list_names.__doc__ is not None
-    True
+    Parameters
+    ----------
+    graph : Graph
+        Gives the names.
+    elements : sequence of str
+        Element ids, most telling first.
+    most : int
+        How many to name; the others are counted.
     """
     shown = list(elements[:most])
     by_side: dict[str, list[str]] = {}
     for element in shown:
         key, side = split_reference(element)
-        by_side.setdefault(side, []).append(graph.name_of(key))
+        by_side.setdefault(side, []).append(in_a_sentence(graph.name_of(key)))
     parts = [("" if side == "midline" else f"{side} ") + join(names) for side, names in by_side.items()]
     more = len(elements) - len(shown)
     return join(parts) + (f" and {more} more" if more > 0 else "")
