@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.records import (
     Claim,

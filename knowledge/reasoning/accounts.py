@@ -15,7 +15,7 @@ from byway.knowledge.reasoning.attribution import Attribution, Bottleneck, attri
 from byway.knowledge.reasoning.grouping import AccountKind, Group, Grouping, kind_of
 from byway.knowledge.reasoning.ledger import Ledgers
 from byway.knowledge.reasoning.posterior import Reckoning
-from byway.knowledge.reasoning.remote import remote_table
+from byway.knowledge.reasoning.remote import named_regions
 from byway.knowledge.reasoning.rerouting import route_flows
 from byway.knowledge.reasoning.scenarios import Scenario, setting_of
 from byway.knowledge.reasoning.sparing import Sparing, explain_sparing
@@ -25,6 +25,8 @@ __all__ = ["LIKELY", "Account", "FoundSign", "build_account", "title_of"]
 
 LIKELY = 0.5
 """P(sign) from which an account is said to explain a finding, or to predict a sign that was not found."""
+
+_WEIGHTY = 0.05  # share of the explained loss from which an element may stand in the title
 
 
 @dataclass(frozen=True)
@@ -136,10 +138,11 @@ def build_account(reckoning: Reckoning, grouping: Grouping, books: Ledgers, inde
     group = grouping.groups[index]
     scenario = group.scenario
     found = [finding.sign_id for finding in reckoning.findings if finding.present]
-    asked = tuple(dict.fromkeys((*found, *(finding.sign_id for finding in reckoning.findings),
-                                 *reckoning.affected_signs)))  # fmt: skip
-    attribution = attribute(reckoning, scenario, asked)
-    named = _elements(attribution, found)
+    attribution = attribute(reckoning, scenario, tuple(found))
+    named = attribution.ordered(found)
+    if not named:  # it accounts for none of the findings: say what it would lead one to expect
+        attribution = attribute(reckoning, scenario, reckoning.affected_signs)
+        named = attribution.ordered(list(attribution.signs))
     necks = _necks(reckoning, scenario, found, attribution)
     shares = dict(named)
     for neck in necks:
@@ -157,7 +160,7 @@ def build_account(reckoning: Reckoning, grouping: Grouping, books: Ledgers, inde
     posterior = float(grouping.posterior[index])
     return Account(
         key="+".join(f"{axis}.{value}" for axis, value in scenario.departures) or "as_drawn",
-        title=title_of(graph, scenario, kind, kept),
+        title=title_of(graph, scenario, kind, [element for element in kept if shares[element] >= _WEIGHTY]),
         kind=kind,
         scenario=scenario,
         departures=scenario.departures,
@@ -171,7 +174,7 @@ def build_account(reckoning: Reckoning, grouping: Grouping, books: Ledgers, inde
         shares=tuple(shares[element] for element in kept),
         ledger=books.table(index),
         bottlenecks=_neck_table(reckoning, necks),
-        counterfactuals=attribution.table(found or list(asked)),
+        counterfactuals=attribution.table(list(attribution.signs)),
         explains=explains,
         leaves=tuple(each for each in told if each.found != "absent" and each.p_sign < LIKELY),
         predicts_absent=tuple(each for each in told if each.found == "absent" and each.p_sign >= LIKELY),
@@ -187,7 +190,7 @@ def title_of(graph: Graph, scenario: Scenario, kind: AccountKind, elements: list
     """One line: what is damaged, and how the account departs from as drawn, typical organisation."""
     regions = [element for element in elements if split_reference(element)[0] in graph.regions]
     segments = [element for element in elements if element not in regions]
-    grey, cut = list_names(graph, regions, 2), list_names(graph, segments, 2)
+    grey, cut = list_names(graph, regions[:2]), list_names(graph, segments[:2])
     parts = [f"damage of {grey}" if grey else "", f"disconnection through {cut}" if cut else ""]
     if kind == "cortical_damage":
         parts = parts[:1]
@@ -197,11 +200,6 @@ def title_of(graph: Graph, scenario: Scenario, kind: AccountKind, elements: list
     departures = [DEPARTURE_WORDS[each] for each in scenario.departures]
     said = f"{join(departures)}{': ' if elements else ''}{lead if elements else ''}" if departures else lead
     return f"{said[0].upper()}{said[1:]}"
-
-
-def _elements(attribution: Attribution, found: list[str]) -> list[tuple[str, float]]:
-    """Elements that account for the findings; where they account for none of them, for all that is to be expected."""
-    return attribution.ordered(found) or attribution.ordered(list(attribution.signs))
 
 
 def _necks(
@@ -222,7 +220,7 @@ def _neck_table(reckoning: Reckoning, necks: list[Bottleneck]) -> pd.DataFrame:
         name = graph.functions[split_reference(neck.copy_id)[0]].name
         many = len(neck.network.routes) > 1
         flows = route_flows(neck.network, neck.damage, reckoning.headroom) if many else ()
-        carried = [flow.words for flow in flows if flow.now >= 0.05]
+        carried = [flow.words for flow in flows if abs(flow.now - flow.usual) >= 0.03]
         held = list_names(graph, neck.elements, 4) or "the lowered load of its routes"
         words = f"{name} is held back by {held}{' together' if len(neck.elements) > 1 else ''}"
         if carried:
@@ -269,9 +267,8 @@ def _cautions(
     if scenario.outside == "yes":
         said.append("A cause outside the lesion is a rate, not a mechanism: look for it.")
     if scenario.remote == "yes":
-        named = remote_table(reckoning.prepared.remote, graph, reckoning.damage_of(
-            Scenario(**{**vars(scenario), "remote": "no"})).mean(axis=0))  # fmt: skip
-        said += [f"{words}." for words in named.loc[named["named"].astype(bool), "words"][:3]]
+        before = reckoning.damage_of(Scenario(**{**vars(scenario), "remote": "no"})).mean(axis=0)
+        said += [f"{words}." for words in named_regions(reckoning.prepared.remote, graph, before)[:3]]
     if told and not any(each.found != "absent" for each in told):
         said.append("Nothing was found: the account says what the damage would lead one to fear, not what is there.")
     return tuple(said)

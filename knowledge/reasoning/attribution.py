@@ -21,7 +21,8 @@ Array = NDArray[np.float32]
 LEAST_SHARE = 0.02
 """An element that accounts for less than this share of what an account explains is not named."""
 
-_DAMAGED = 0.02
+_DAMAGED = 0.02  # mean damage from which an element is asked about
+_NAMED = 0.1  # mean damage from which an element is named in a bottleneck
 
 
 @dataclass(frozen=True, eq=False)
@@ -161,7 +162,7 @@ def bottlenecks(reckoning: Reckoning, scenario: Scenario, copies: list[str], bel
         mean = own.mean(axis=0)
         _, named = table.cuts.bottleneck(mean, reckoning.headroom)
         network = table.cuts.network
-        elements = tuple(network.elements[i] for i in named if mean[i] >= _DAMAGED)
+        elements = tuple(network.elements[i] for i in named if mean[i] >= _NAMED)
         found.append(Bottleneck(copy, network, capacity, elements, mean))
     return sorted(found, key=lambda each: each.capacity)
 

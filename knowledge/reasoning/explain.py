@@ -25,7 +25,7 @@ from byway.knowledge.reasoning.remote import remote_table
 from byway.knowledge.reasoning.scenarios import Priors, Scenario, axis_priors, headroom_of, setting_of
 from byway.knowledge.reasoning.wording import CAUTION
 
-__all__ = ["Explanation", "Person", "explain_findings"]
+__all__ = ["Explanation", "Person", "Situation", "explain_findings", "function_table", "sign_table"]
 
 MOST_ACCOUNTS = 12
 
@@ -55,6 +55,16 @@ class _Damage(Protocol):
     def element_ids(self) -> tuple[str, ...]: ...
 
 
+@dataclass(frozen=True)
+class Situation:
+    """The person and the disease, as far as reasoning asks."""
+
+    handedness: str
+    stage: str
+    cause: str
+    priors: Priors | None = None
+
+
 @dataclass(frozen=True, eq=False)
 class Explanation:
     """What one lesion and some findings come to.
@@ -82,6 +92,8 @@ class Explanation:
         Share of the lesion's white matter that lies in no segment of the graph; NaN where not reckoned.
     caution : str
         One line that goes with every display.
+    situation : Situation
+        Handedness, stage, cause and the case's own priors.
     reckoning, grouping, outlook
         The reckoning behind it, for sensitivity, what-if and the user's own account.
     """
@@ -97,6 +109,7 @@ class Explanation:
     remote: pd.DataFrame
     uncharted_share: float
     caution: str
+    situation: Situation
     reckoning: Reckoning = field(repr=False)
     grouping: Grouping = field(repr=False)
     outlook: Outlook = field(repr=False)
@@ -133,6 +146,7 @@ class Explanation:
             "accounts": [account.to_dict() for account in self.accounts],
             "other_posterior": self.other_posterior,
             "uncharted_share": self.uncharted_share,
+            "situation": vars(self.situation).copy(),
         }
         for name in ("damage", "functions", "signs", "next_tests", "next_images", "next_axes", "remote"):
             plain[name] = getattr(self, name).to_dict("records")
@@ -215,6 +229,7 @@ def explain_findings(
         remote=remote_table(prepared.remote, graph, np.asarray(damage.share, np.float32)),
         uncharted_share=uncharted_share,
         caution=CAUTION,
+        situation=Situation(person.handedness, stage, cause, priors),
         reckoning=reckoning,
         grouping=grouping,
         outlook=ahead,

@@ -7,7 +7,7 @@ Averaging the product, not each factor, keeps findings together that one virtual
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import cached_property
 
 import numpy as np
@@ -19,7 +19,7 @@ from byway.knowledge.reasoning.scenarios import AXES, AxisPriors, Scenario, enum
 from byway.knowledge.reasoning.signs import LossCache, SignModel, outside_tails
 from byway.knowledge.reasoning.states import STATES, DamageStates, damage_states
 
-__all__ = ["SLIP", "Reckoning", "log_mean", "reckon", "weigh", "with_findings"]
+__all__ = ["SLIP", "Reckoning", "log_mean", "reckon", "weigh", "with_findings", "without_finding"]
 
 Array = NDArray[np.float32]
 
@@ -41,6 +41,8 @@ class Reckoning:
     ----------
     prepared : Prepared
         The graph, made ready.
+    draws : mapping
+        The damage ensemble by variant, as it was given.
     states : DamageStates
         Damage in every state and draw.
     headroom : float
@@ -60,6 +62,7 @@ class Reckoning:
     """
 
     prepared: Prepared
+    draws: Mapping[str, NDArray[np.floating]] = field(repr=False)
     states: DamageStates
     headroom: float
     priors: AxisPriors
@@ -171,7 +174,7 @@ def reckon(
     capacities = _capacities(prepared, states, headroom)
     losses = [LossCache(each) for each in capacities]
     kept = tuple(findings)
-    bare = Reckoning(prepared, states, headroom, priors, kept, graph.norm("finding_lapse"), rates, capacities,
+    bare = Reckoning(prepared, draws, states, headroom, priors, kept, graph.norm("finding_lapse"), rates, capacities,
                      np.zeros((0, len(SCENARIOS), states.n_draws), np.float32), losses)  # fmt: skip
     return with_findings(bare, kept)
 
@@ -186,11 +189,14 @@ def with_findings(reckoning: Reckoning, findings: Sequence[Finding]) -> Reckonin
             for outside in range(_OUTSIDE):
                 seen = outside_tails(tails, reckoning.outside_rates) if outside else tails
                 logs[f, setting, outside] = np.log(model.likelihood(finding, seen, reckoning.lapse))
-    return Reckoning(
-        reckoning.prepared, reckoning.states, reckoning.headroom, reckoning.priors, tuple(findings), reckoning.lapse,
-        reckoning.outside_rates, reckoning.capacities,
-        logs.reshape(len(findings), len(SCENARIOS), -1), reckoning._losses,
-    )  # fmt: skip
+    return replace(reckoning, findings=tuple(findings), finding_logs=logs.reshape(len(findings), len(SCENARIOS), -1))
+
+
+def without_finding(reckoning: Reckoning, number: int) -> Reckoning:
+    """The same reckoning with one finding left out."""
+    kept = [f for f in range(len(reckoning.findings)) if f != number]
+    return replace(reckoning, findings=tuple(reckoning.findings[f] for f in kept),
+                   finding_logs=reckoning.finding_logs[kept])  # fmt: skip
 
 
 def log_mean(logs: NDArray[np.float64]) -> NDArray[np.float64]:

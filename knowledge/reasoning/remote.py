@@ -17,9 +17,11 @@ from numpy.typing import NDArray
 
 from byway.knowledge.graph.graph import Graph
 
-__all__ = ["Connection", "RemoteModel", "remote_model", "remote_table", "segment_ends"]
+__all__ = ["Connection", "RemoteModel", "named_regions", "remote_model", "remote_table", "segment_ends"]
 
 Array = NDArray[np.float32]
+
+_OWN_DAMAGE = 0.5  # a region with more damage of its own is damaged, not silenced from afar
 
 
 @dataclass(frozen=True)
@@ -173,17 +175,24 @@ def remote_table(model: RemoteModel, graph: Graph, share: NDArray[np.floating], 
         still = nx.single_source_dijkstra_path_length(after, region, weight="length")
         others = [other for other in reached if other != region]
         strength = float(before.degree(region, weight="weight")), float(after.degree(region, weight="weight"))
-        named = losses[region] >= model.threshold and float(share[region]) < 0.5
-        cut = _worst_input(model, damage[:, 0], region)
+        named = losses[region] >= model.threshold and float(share[region]) < _OWN_DAMAGE
         rows.append([
             element, graph.name_of(element), float(share[region]), losses[region], *strength,
             talk_after[region] / talk_before[region] if talk_before[region] > 0 else 1.0,
             float(np.mean([reached[o] for o in others])) if others else 0.0,
             float(np.mean([still.get(o, np.inf) for o in others])) if others else 0.0,
-            named, _words(graph, element, losses[region], float(share[region]), [model.element_ids[c] for c in cut],
-                          named),
+            named, _sentence(model, graph, damage[:, 0], region, losses[region]),
         ])  # fmt: skip
     return pd.DataFrame(rows, columns=columns)
+
+
+def named_regions(model: RemoteModel, graph: Graph, share: NDArray[np.floating]) -> list[str]:
+    """Why each region that may be silenced is named, most lost input first; ``share`` as in :func:`remote_table`."""
+    damage = np.ascontiguousarray(share, np.float32)
+    losses = {region: float(value[0]) for region, value in model.input_loss(damage[:, None]).items()}
+    silent = [region for region, lost in losses.items() if lost >= model.threshold and damage[region] < _OWN_DAMAGE]
+    silent.sort(key=lambda region: -losses[region])
+    return [_sentence(model, graph, damage, region, losses[region]) for region in silent]
 
 
 def segment_ends(graph: Graph) -> dict[str, tuple[str, str]]:
@@ -255,10 +264,15 @@ def _worst_input(model: RemoteModel, damage: NDArray[np.floating], region: int) 
     return sorted(cost, key=lambda part: -cost[part])[:3]
 
 
-def _words(graph: Graph, element: str, lost: float, own: float, cut: list[str], named: bool) -> str:
+def _sentence(
+    model: RemoteModel, graph: Graph, damage: NDArray[np.floating], region: int, lost: float
+) -> str:
     """Why a region is named, or why not."""
-    through = ", ".join(graph.name_of(each) for each in cut)
-    start = f"{graph.name_of(element)} lost {lost:.0%} of its input through {through}"
-    if named:
-        return f"{start}; it is itself {'untouched' if own < 0.02 else f'only {own:.0%} damaged'} and may fall silent"
-    return f"{start}; " + ("it is itself damaged" if own >= 0.5 else "too little to silence it")
+    own = float(damage[region])
+    through = ", ".join(graph.name_of(model.element_ids[part]) for part in _worst_input(model, damage, region))
+    start = f"{graph.name_of(model.element_ids[region])} lost {lost:.0%} of its input through {through}"
+    if own >= _OWN_DAMAGE:
+        return f"{start}; it is itself damaged"
+    if lost < model.threshold:
+        return f"{start}; too little to silence it"
+    return f"{start}; it is itself {'untouched' if own < 0.02 else f'only {own:.0%} damaged'} and may fall silent"

@@ -1,12 +1,14 @@
-"""Which route of a function carries what, in one damage state: a flow that keeps to usual loads where it can.
+"""Which route of a function carries what, in one damage state: usual ways first, then what the spared parts take over.
 
-Among all maximum flows the one shown uses headroom last: every element first carries up to its usual load at no
-cost, and what goes beyond costs one, so the flow of least cost is the usual pattern as far as damage allows.
+To begin with, every route carries its usual load times what its worst element lets through, which is always possible.
+Then the flow is augmented along shortest paths to the maximum, at most 1 (Edmonds and Karp 1972); what is added uses
+headroom and spare parts of other routes.
 """
 
 from __future__ import annotations
 
 import itertools
+from collections import deque
 from dataclasses import dataclass
 
 import networkx as nx
@@ -17,7 +19,9 @@ from byway.knowledge.graph.networks import FunctionNetwork
 
 __all__ = ["RouteFlow", "flow_graph", "route_flows"]
 
-_SCALE = 1_000_000  # network simplex wants whole numbers
+_SOURCE, _SINK = 0, 1
+_TINY = 1e-6
+Edge = tuple[int, int]
 
 
 @dataclass(frozen=True)
@@ -44,11 +48,12 @@ class RouteFlow:
         """One clause for a card.
 
         >>> RouteFlow("indirect", (), 0.4, 0.55).words
-        'indirect carries 0.55 of the function (usually 0.40)'
+        'the indirect route carries 0.55 of the function (usually 0.40)'
         """
+        name = "a detour" if self.key == "recombined" else f"the {self.key.replace('_', ' ')} route"
         if self.now < 0.005:
-            return f"{self.key} carries nothing (usually {self.usual:.2f})"
-        return f"{self.key} carries {self.now:.2f} of the function (usually {self.usual:.2f})"
+            return f"{name} carries nothing (usually {self.usual:.2f})"
+        return f"{name} carries {self.now:.2f} of the function (usually {self.usual:.2f})"
 
 
 def flow_graph(network: FunctionNetwork, damage: NDArray[np.floating], headroom: float) -> nx.DiGraph:
@@ -61,15 +66,12 @@ def flow_graph(network: FunctionNetwork, damage: NDArray[np.floating], headroom:
     headroom : float
         As in :mod:`~byway.knowledge.reasoning.capacity`.
     """
+    names = {_SOURCE: "source", _SINK: "sink"}
+    for i in range(len(network.elements)):
+        names |= {_in(i): ("in", i), _out(i): ("out", i)}  # type: ignore[dict-item]
     graph = nx.DiGraph()
-    for i, load in enumerate(network.element_loads):
-        graph.add_edge(("in", i), ("out", i), capacity=load * (1.0 + headroom) * (1.0 - float(damage[i])))
-    for (a, b), load in zip(network.links, network.link_loads, strict=True):
-        graph.add_edge(("out", a), ("in", b), capacity=load * (1.0 + headroom))
-    for i in network.sources:
-        graph.add_edge("source", ("in", i), capacity=network.source_loads[i] * (1.0 + headroom))
-    for i in network.sinks:
-        graph.add_edge(("out", i), "sink", capacity=network.sink_loads[i] * (1.0 + headroom))
+    for (a, b), capacity in _edge_capacities(network, damage, headroom).items():
+        graph.add_edge(names[a], names[b], capacity=capacity)
     return graph
 
 
@@ -78,76 +80,117 @@ def route_flows(network: FunctionNetwork, damage: NDArray[np.floating], headroom
 
     The ``now`` of all of them sum to the function's capacity (to 1e-4).
     """
-    flow = _least_cost_flow(network, damage, headroom)
-    found: list[RouteFlow] = []
+    flow = _flow(network, damage, headroom)
     order = sorted(range(len(network.routes)), key=lambda r: -network.route_loads[r])
     named = dict.fromkeys(order, 0.0)
-    for bound in (1.0, np.inf):  # first each route's usual load, then what is left on its steps
+    for capped in (True, False):  # first each route's usual load, then what is left on its steps
         for r in order:
             steps = _steps(network.routes[r])
-            carried = min(network.route_loads[r] * bound * _SCALE if bound == 1.0 else bound,
-                          *(flow.get(step, 0.0) for step in steps))  # fmt: skip
+            carried = min(flow[step] for step in steps)
+            if capped:
+                carried = min(carried, network.route_loads[r])
             for step in steps:
                 flow[step] -= carried
-            named[r] += carried / _SCALE
-    for r, (key, route) in enumerate(zip(network.route_keys, network.routes, strict=True)):
-        ids = tuple(network.elements[i] for i in route)
-        found.append(RouteFlow(key, ids, network.route_loads[r], named[r]))
-    found += [RouteFlow("recombined", tuple(network.elements[i] for i in path), 0.0, carried / _SCALE)
-              for path, carried in _left_over(network, flow)]  # fmt: skip
+            named[r] += carried
+    found = [
+        RouteFlow(key, tuple(network.elements[i] for i in route), network.route_loads[r], named[r])
+        for r, (key, route) in enumerate(zip(network.route_keys, network.routes, strict=True))
+    ]
+    found += [RouteFlow("recombined", tuple(network.elements[i] for i in path), 0.0, carried)
+              for path, carried in _left_over(flow)]  # fmt: skip
     return tuple(found)
 
 
-def _steps(route: tuple[int, ...]) -> list[tuple[object, object]]:
-    """Edges of the split graph along a route."""
-    nodes: list[object] = ["source"]
-    for i in route:
-        nodes += [("in", i), ("out", i)]
-    nodes.append("sink")
+def _in(element: int) -> int:
+    return 2 + 2 * element
+
+
+def _out(element: int) -> int:
+    return 3 + 2 * element
+
+
+def _edge_capacities(
+    network: FunctionNetwork, damage: NDArray[np.floating], headroom: float
+) -> dict[Edge, float]:
+    """Capacity of every edge of the node-split graph."""
+    room = 1.0 + headroom
+    edges = {(_in(i), _out(i)): load * room * (1.0 - float(damage[i]))
+             for i, load in enumerate(network.element_loads)}  # fmt: skip
+    edges |= {(_out(a), _in(b)): load * room for (a, b), load in zip(network.links, network.link_loads, strict=True)}
+    edges |= {(_SOURCE, _in(i)): network.source_loads[i] * room for i in network.sources}
+    edges |= {(_out(i), _SINK): network.sink_loads[i] * room for i in network.sinks}
+    return edges
+
+
+def _steps(route: tuple[int, ...]) -> list[Edge]:
+    """Edges of the node-split graph along a route."""
+    nodes = [_SOURCE, *(node for i in route for node in (_in(i), _out(i))), _SINK]
     return list(itertools.pairwise(nodes))
 
 
-def _least_cost_flow(
-    network: FunctionNetwork, damage: NDArray[np.floating], headroom: float
-) -> dict[tuple[object, object], float]:
-    """A maximum flow, at most 1, that goes beyond usual loads as little as it can; edges of the split graph."""
-    plain = flow_graph(network, damage, headroom)
-    usual: dict[tuple[object, object], float] = {}
-    for i, load in enumerate(network.element_loads):
-        usual[("in", i), ("out", i)] = load
-    for (a, b), load in zip(network.links, network.link_loads, strict=True):
-        usual[("out", a), ("in", b)] = load
-    usual |= {("source", ("in", i)): network.source_loads[i] for i in network.sources}
-    usual |= {(("out", i), "sink"): network.sink_loads[i] for i in network.sinks}
-    graph = nx.DiGraph()
-    graph.add_edge("start", "source", capacity=_SCALE, weight=0)
-    for a, b, data in plain.edges(data=True):
-        capacity = round(data["capacity"] * _SCALE)
-        within = min(capacity, round(usual[a, b] * _SCALE))
-        graph.add_edge(a, b, capacity=within, weight=0)
-        if capacity > within:  # a detour node stands for the headroom, because the graph holds one edge a pair
-            graph.add_edge(a, ("beyond", a, b), capacity=capacity - within, weight=1)
-            graph.add_edge(("beyond", a, b), b, capacity=capacity - within, weight=0)
-    found = nx.max_flow_min_cost(graph, "start", "sink")
-    return {
-        (a, b): float(found[a].get(b, 0) + found[a].get(("beyond", a, b), 0)) for a, b in plain.edges
-    }
+def _flow(network: FunctionNetwork, damage: NDArray[np.floating], headroom: float) -> dict[Edge, float]:
+    """A maximum flow, at most 1, that starts from the usual pattern."""
+    capacity = _edge_capacities(network, damage, headroom)
+    flow = dict.fromkeys(capacity, 0.0)
+    total = 0.0
+    for route, load in zip(network.routes, network.route_loads, strict=True):
+        carried = load * (1.0 - max(float(damage[i]) for i in route))
+        total += carried
+        for step in _steps(route):
+            flow[step] += carried
+    onward: dict[int, list[tuple[int, Edge, int]]] = {}
+    for a, b in capacity:
+        onward.setdefault(a, []).append((b, (a, b), 1))
+        onward.setdefault(b, []).append((a, (a, b), -1))
+    while total < 1.0 - _TINY:
+        path = _augmenting(onward, capacity, flow)
+        if path is None:
+            break
+        more = min(capacity[edge] - flow[edge] if way > 0 else flow[edge] for edge, way in path)
+        more = min(more, 1.0 - total)
+        for edge, way in path:
+            flow[edge] += way * more
+        total += more
+    return flow
 
 
-def _left_over(
-    network: FunctionNetwork, flow: dict[tuple[object, object], float]
-) -> list[tuple[tuple[int, ...], float]]:
+def _augmenting(
+    onward: dict[int, list[tuple[int, Edge, int]]], capacity: dict[Edge, float], flow: dict[Edge, float]
+) -> list[tuple[Edge, int]] | None:
+    """The shortest path on which more can flow: its edges, each with 1 (more) or -1 (less); None if there is none."""
+    reached: dict[int, tuple[int, Edge, int] | None] = {_SOURCE: None}
+    waiting = deque([_SOURCE])
+    while waiting and _SINK not in reached:
+        here = waiting.popleft()
+        for ahead, edge, way in onward.get(here, ()):
+            room = capacity[edge] - flow[edge] if way > 0 else flow[edge]
+            if ahead not in reached and room > _TINY:
+                reached[ahead] = (here, edge, way)
+                waiting.append(ahead)
+    if _SINK not in reached:
+        return None
+    path = []
+    step = reached[_SINK]
+    while step is not None:
+        here, edge, way = step
+        path.append((edge, way))
+        step = reached[here]
+    return path
+
+
+def _left_over(flow: dict[Edge, float]) -> list[tuple[tuple[int, ...], float]]:
     """Decompose what named routes do not account for into paths."""
-    graph = nx.DiGraph([edge for edge, carried in flow.items() if carried > 0.5])
-    paths = []
-    while graph.has_node("source") and graph.has_node("sink") and nx.has_path(graph, "source", "sink"):
-        nodes = nx.shortest_path(graph, "source", "sink")
-        edges = list(itertools.pairwise(nodes))
-        carried = min(flow[edge] for edge in edges)
-        for edge in edges:
-            flow[edge] -= carried
-            if flow[edge] <= 0.5:
-                graph.remove_edge(*edge)
-        if carried > 1e-5 * _SCALE:
-            paths.append((tuple(node[1] for node in nodes if node[0] == "in"), carried))
-    return paths
+    paths: list[tuple[tuple[int, ...], float]] = []
+    while True:
+        here, path = _SOURCE, []
+        while here != _SINK:
+            step = next((edge for edge, carried in flow.items() if edge[0] == here and carried > _TINY), None)
+            if step is None:
+                return paths
+            path.append(step)
+            here = step[1]
+        carried = min(flow[step] for step in path)
+        for step in path:
+            flow[step] -= carried
+        if carried > 1e-5:
+            paths.append((tuple((a - 2) // 2 for a, b in path if b == a + 1 and a >= 2 and a % 2 == 0), carried))

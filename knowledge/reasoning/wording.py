@@ -7,7 +7,9 @@ from collections.abc import Sequence
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.references import split_reference
 
-__all__ = ["CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_a_sentence", "in_words", "join", "list_names", "share_words"]
+__all__ = [
+    "CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_a_sentence", "in_words", "join", "list_names", "share_words",
+]  # fmt: skip
 
 CAUTION = (
     "This supports reasoning and research; it is no diagnosis. Local protocols and licensed practice decide."

@@ -7,13 +7,14 @@ import itertools
 import networkx as nx
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+from toy_graph import toy_graph
+
 from byway.knowledge.faults import GraphError
 from byway.knowledge.graph.networks import FunctionNetwork, function_networks
 from byway.knowledge.reasoning.capacity import capacities, cut_table
 from byway.knowledge.reasoning.rerouting import flow_graph, route_flows
-from hypothesis import given, settings
-from hypothesis import strategies as st
-from toy_graph import toy_graph
 
 
 def network(routes: dict[str, tuple[float, str]]) -> FunctionNetwork:
@@ -137,7 +138,7 @@ def test_spared_route_takes_over_with_headroom() -> None:
     damage[net.elements.index("b")] = 1.0
     direct, indirect = route_flows(net, damage, 0.35)
     assert (direct.now, indirect.now) == (pytest.approx(0.0), pytest.approx(0.54, abs=1e-4))
-    assert indirect.words == "b carries 0.54 of the function (usually 0.40)"
+    assert indirect.words == "the b route carries 0.54 of the function (usually 0.40)"
 
 
 def test_undamaged_routes_carry_their_usual_loads() -> None:
