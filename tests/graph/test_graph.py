@@ -73,7 +73,7 @@ def test_sign_dependences(graph: Graph) -> None:
 def test_kinds_and_names(graph: Graph) -> None:
     """Keys and ids answer with kind and readable name; unknown ones with the nearest."""
     assert graph.kind_of("bow.long@left") == "segment"
-    assert graph.name_of("bow.long@left") == "Bow (long part), left"
+    assert graph.name_of("bow.long@left") == "Bow, left"
     assert graph.name_of("poor_echo@none") == "Poor echo"
     assert graph.name_of("first_2001") == "First A 2001"
     with pytest.raises(GraphError, match="did you mean bow_exists"):
