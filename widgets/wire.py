@@ -57,7 +57,7 @@ def send(
         packed = values.nbytes > _DEFLATE_FROM
         heads.append({"name": name, "type": values.dtype.name, "shape": list(values.shape),
                       "packed": "deflate" if packed else ""})  # fmt: skip
-        buffers.append(zlib.compress(memoryview(values).cast("B"), 1) if packed else values.tobytes())
+        buffers.append(zlib.compress(values.reshape(-1).view(np.uint8).data, 1) if packed else values.tobytes())
     return {"wire": WIRE_VERSION, "kind": kind, "arrays": heads, **plain(fields)}, buffers
 
 

@@ -13,7 +13,10 @@ PAGE = """<!doctype html><html lang="en"><head><meta charset="utf-8"><title>bywa
 <style>body {{ margin: 0; padding: 24px; background: var(--jp-layout-color0, #f4f5f6); }} {css}</style></head>
 <body data-jp-theme-light="{light}" style="{theme}"><main id="here"></main></body></html>"""
 
-DARK = "--jp-ui-font-color1: #e3e6ea; --jp-ui-font-color2: #a4abb3; --jp-layout-color1: #1b1e22; --jp-layout-color0: #121417;"
+DARK = (
+    "--jp-ui-font-color1: #e3e6ea; --jp-ui-font-color2: #a4abb3; "
+    "--jp-layout-color1: #1b1e22; --jp-layout-color0: #121417;"
+)
 
 MODEL = """
 window.outbox = [];
@@ -33,7 +36,11 @@ window.makeModel = (state) => {
   const emit = (name, ...values) => [...(calls.get(name) || [])].forEach((call) => call(...values));
   return model;
 };
-const toText = (buffer) => { let s = ''; for (const b of new Uint8Array(buffer)) s += String.fromCharCode(b); return btoa(s); };
+const toText = (buffer) => {
+  let s = '';
+  for (const b of new Uint8Array(buffer)) s += String.fromCharCode(b);
+  return btoa(s);
+};
 const toView = (text) => new DataView(Uint8Array.from(atob(text), (c) => c.charCodeAt(0)).buffer);
 window.mount = async (source, state) => {
   const url = URL.createObjectURL(new Blob([source], { type: 'text/javascript' }));

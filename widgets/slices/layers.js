@@ -91,12 +91,11 @@ export class Layers {
   }
 
   /** A coloured sheet of an 8-bit volume on a slice. */
-  coloured(name, plane, index, scale, mark) {
-    const data = this.store.volume(name);
+  coloured(name, plane, index, scale, mark, data, map) {
     if (!data) return null;
     return this.keep(`${name} ${plane}`, `${index} ${mark}`, (old) => {
       const sheet = this.sheet(old, plane);
-      const grey = this.store.grid.slice(data, plane, index, sheet.grey);
+      const grey = this.store.grid.slice(data, plane, index, sheet.grey, map);
       const pixels = sheet.image.data;
       for (let n = 0, p = 0; n < grey.length; n++, p += 4) {
         const c = 4 * grey[n];
@@ -108,12 +107,20 @@ export class Layers {
   }
 
   graded(plane, index) {
-    return this.store.gradedScale && this.look.showGraded
-      ? this.coloured("graded", plane, index, EFFECT_SCALE, "") : null;
+    const { store, look } = this;
+    if (!store.gradedScale || !look.showGraded) return null;
+    return this.coloured("graded", plane, index, EFFECT_SCALE, store.scanMark, store.volume("graded"));
   }
 
+  /** The chance of being hit, shown over all that an element covers. */
   chance(plane, index) {
-    return this.look.showChance ? this.coloured("chance", plane, index, CHANCE_SCALE, this.store.chanceMark || 0) : null;
+    const { store, look } = this;
+    if (!look.showChance || !store.chance || !store.elements) return null;
+    if (this.chanceMark !== store.chanceMark) {
+      this.chanceMap = store.chanceOfCodes();
+      this.chanceMark = store.chanceMark;
+    }
+    return this.coloured("chance", plane, index, CHANCE_SCALE, this.chanceMark, store.elements.codes, this.chanceMap);
   }
 
   /** Voxels in the range that the threshold tool shows. */

@@ -41,7 +41,7 @@ export function overlays(view) {
   search.addEventListener("change", () => {
     const found = byText && byText.get(search.value);
     if (!found) return;
-    view.showElement(found.id);
+    view.outline(found.id, false);
     search.value = "";
   });
   const graded = toggle(words.show_graded, () => look.showGraded, (on) => look.set({ showGraded: on }));
@@ -57,7 +57,7 @@ export function overlays(view) {
   const make = (item) => {
     const e = elementOf(store, item.position);
     const fill = h("button", { type: "button", class: "bs-button bs-small", onclick: () => {
-      look.set({ shown: look.shown.map((s) => (s.position === item.position ? { ...s, fill: !s.fill } : s)) });
+      look.set({ shown: look.shown.map((s) => (s.position === item.position ? { ...s, fill: !s.fill, passing: false } : s)) });
     } });
     const off = h("button", { type: "button", class: "bs-button bs-small", "aria-label": `${words.hide} ${e.name}`, onclick: () =>
       look.set({ shown: look.shown.filter((s) => s.position !== item.position) }) }, "×");

@@ -15,6 +15,7 @@ from byway.widgets.panel import Panel
 from byway.widgets.slices.uploads import Uploads
 from byway.widgets.state import BenchState
 from byway.widgets.wire import plain, send
+from byway.widgets.words import word
 
 __all__ = ["SlicesPanel"]
 
@@ -61,7 +62,7 @@ class SlicesPanel(Panel):
         self._notice = t.dlink((self.state, "notice"), (self, "notice"))
         self.when(["lesion_seq"], self._show_change)
         self.when(["damage_seq"], self._show_shares)
-        self.when(["accounts_seq"], lambda: self._tell("stale", volume="chance"))
+        self.when(["accounts_seq"], self._show_chances)
         self.when(["scans_seq"], lambda: self._tell("scans", scans=self._scans()))
         self.when(["cursor_mm"], lambda: setattr(self, "cursor_mm", list(self.state.cursor_mm)))
 
@@ -80,7 +81,7 @@ class SlicesPanel(Panel):
         self.revision += 1
         i0, i1, j0, j1, k0, k1 = change.box
         patch = self.state.drawing.bits[i0:i1, j0:j1, k0:k1]
-        more = {"styles": self._styles(), "graded": self.state.drawing.settings.scale} if change.settings else {}
+        more = {"styles": self._styles(), "graded": self._graded()} if change.settings else {}
         self._tell("patch", {"bits": patch}, revision=self.revision, box=change.box, label=change.label,
                    origin=dict(self.state.last_origin), **self._counts(), **more)  # fmt: skip
 
@@ -88,6 +89,11 @@ class SlicesPanel(Panel):
         damage = self.state.damage
         if damage is not None:
             self._tell("shares", {"share": np.asarray(damage.share, np.float32)})
+
+    def _show_chances(self) -> None:
+        ensemble = self.state.ensemble
+        if ensemble is not None:
+            self._tell("chances", {"chance": ensemble.hit_probability()})
 
     # -- what the browser asks --------------------------------------------------------------------------------------
 
@@ -105,6 +111,7 @@ class SlicesPanel(Panel):
     def _on_hello(self, message: dict[str, Any], _: list[Any]) -> None:
         self._send_table()
         self._show_shares()
+        self._show_chances()
 
     def _on_want(self, message: dict[str, Any], _: list[Any]) -> None:
         name = str(message["volume"])
@@ -161,10 +168,15 @@ class SlicesPanel(Panel):
         grid = self.state.drawing.grid
         self._tell("table", shape=grid.shape, affine=grid.affine, space=grid.space, revision=self.revision,
                    styles=self._styles(), scans=self._scans(), elements=self.state.geometry is not None,
-                   graded=self.state.drawing.settings.scale, **self._counts())  # fmt: skip
+                   graded=self._graded(), **self._counts())  # fmt: skip
 
     def _styles(self) -> list[dict[str, Any]]:
         return [dict(plain(vars(style))) for style in self.state.drawing.styles]
+
+    def _graded(self) -> str | None:
+        """What the graded map's values mean, or None where there is none."""
+        settings = self.state.drawing.settings
+        return None if settings.effect_volume is None else settings.scale or word("slices.effect")
 
     def _counts(self) -> dict[str, Any]:
         drawing = self.state.drawing

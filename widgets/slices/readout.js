@@ -18,7 +18,7 @@ export function readout(view) {
     const e = elementOf(store, position);
     const share = h("span", { class: "bw-number bs-share" });
     const item = h("li", {}, h("button", { type: "button", class: "bw-chip", title: words.point_out, onclick: () =>
-      view.showElement(e.id) }, glyph(e.segment ? "segment" : "region"), h("span", {}, e.name),
+      view.pickElement(e.id) }, glyph(e.segment ? "segment" : "region"), h("span", {}, e.name),
       h("span", { class: "bw-side", title: words[e.side] }, words[`${e.side}_short`] || ""), share));
     item.change = () => {
       const lost = store.share ? store.share[position] : NaN;

@@ -88,6 +88,10 @@ export class Store {
     else if (kind === "shares") {
       this.share = arrays.share.data;
       this.tell("shares");
+    } else if (kind === "chances") {
+      this.chance = arrays.chance.data;
+      this.chanceMark = (this.chanceMark || 0) + 1;
+      this.tell("chances");
     } else if (kind === "elements") this.takeElements(message, arrays);
     else if (kind === "scans") {
       this.scans = message.scans;
@@ -128,6 +132,8 @@ export class Store {
     this.count(message);
     if (message.styles) {
       this.styles = message.styles;
+      this.gradedScale = message.graded;
+      this.forget("graded");
       this.tell("styles");
     }
     const mine = message.origin.view === this.id;
@@ -187,6 +193,19 @@ export class Store {
       for (let m = offsets[code]; m < offsets[code + 1]; m++) if (members[m] === position) flags[code] = 1;
     }
     return flags;
+  }
+
+  /** For every code of the element map, the largest chance (0 to 255) of an element there to be hit; null if unknown. */
+  chanceOfCodes() {
+    if (!this.elements || !this.chance) return null;
+    const { offsets, members } = this.elements;
+    const most = new Uint8Array(offsets.length - 1);
+    for (let code = 0; code < most.length; code++) {
+      for (let m = offsets[code]; m < offsets[code + 1]; m++) {
+        most[code] = Math.max(most[code], Math.round(255 * this.chance[members[m]]));
+      }
+    }
+    return most;
   }
 
   /** Sends a file in parts; `progress` gets the share sent. */

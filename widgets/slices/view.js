@@ -165,7 +165,7 @@ class View {
       store.grid.frameBy(store.volumes.get(detail.volume));
       this.fitAll();
     }
-    if (["styles", "volume", "scans", "elements"].includes(event)) {
+    if (["styles", "volume", "scans", "elements", "chances"].includes(event)) {
       this.needsReadout = true;
       if (event !== "styles") store.scanMark = (store.scanMark || 0) + 1;
       if (event === "elements") this.selectedFromModel();
@@ -347,23 +347,25 @@ class View {
     this.announce(this.words[on ? "radiological_on" : "neurological_on"]);
   }
 
-  /** Outlines an element here, and tells the other panels that it was picked. */
-  showElement(id) {
+  /** Tells all panels that an element was picked; this one outlines it. */
+  pickElement(id) {
     this.model.set("selected", id);
     this.model.save_changes();
-    this.outline(id);
+    this.outline(id, true);
   }
 
-  outline(id) {
+  /** Outlines an element; a passing outline makes room for the next one. */
+  outline(id, passing) {
     const position = this.store.elements ? this.store.elements.ids.indexOf(id) : -1;
-    if (position < 0 || this.look.shown.some((s) => s.position === position)) return;
     const kept = this.look.shown.filter((s) => !s.passing);
-    this.look.set({ shown: [...kept, { position, fill: false, segment: id.includes(".") }] });
+    if (position < 0 || kept.some((s) => s.position === position)) return;
+    this.look.set({ shown: [...kept, { position, fill: passing, segment: id.includes("."), passing }] });
   }
 
   selectedFromModel() {
     const id = this.model.get("selected");
-    if (id) this.outline(id);
+    if (id) this.outline(id, true);
+    else if (this.look.shown.some((s) => s.passing)) this.look.set({ shown: this.look.shown.filter((s) => !s.passing) });
   }
 
   toggleHelp() {

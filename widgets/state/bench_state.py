@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import replace
 from functools import cached_property
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -13,12 +15,15 @@ from numpy.typing import NDArray
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.geometry import Geometry
+from byway.widgets.state.casefiles import load_lesion, load_scan, save_drawing, unsaved_edits
 from byway.widgets.state.drawing import Change, Drawing, Settings, Style
-from byway.widgets.state.edits import apply_edit, voxels_edit
+from byway.widgets.state.edits import LEANS_ON_SCANS, apply_edit, bytes_edit
 from byway.widgets.state.elements import ElementMap
+from byway.widgets.state.history import unpacked_indices
 from byway.widgets.state.resting import Resting
 from byway.widgets.state.scans import Scans
 from byway.widgets.state.science import NoScience, Science
+from byway.widgets.words import word
 
 __all__ = ["BenchState"]
 
@@ -119,8 +124,8 @@ class BenchState(t.HasTraits):
         return ElementMap.build(self.science.index) if self.science.index is not None else None
 
     def map_of(self, kind: str) -> NDArray[np.uint8] | None:
-        """A map over the grid, 0 to 255: ``uncharted`` or ``chance`` (of being hit); None where it is not known."""
-        return self.science.map_of(kind, self.lesion, self.ensemble)
+        """A map over the grid, 0 to 255: ``uncharted`` white matter; None where it is not known."""
+        return self.science.map_of(kind)
 
     # -- the drawing ------------------------------------------------------------------------------------------------
 
@@ -156,8 +161,15 @@ class BenchState(t.HasTraits):
         """
         change = apply_edit(self.drawing, edit, self.scans)
         if change is not None:
-            self._changed(change, origin or {}, {"kind": "edit", "edit": dict(edit)})
+            self._changed(change, origin or {}, {"kind": "edit", "edit": self._lasting(edit, change)})
         return change
+
+    def _lasting(self, edit: Mapping[str, Any], change: Change) -> dict[str, Any]:
+        """The record to journal: one that leans on a scan is kept as the bytes that it gave."""
+        if edit["op"] not in LEANS_ON_SCANS or change.voxels == 0:
+            return dict(edit)
+        indices = unpacked_indices(self.drawing.history.done[-1].indices)
+        return {**bytes_edit(indices, self.drawing.flat[indices]), "label": edit["op"]}
 
     def undo(self) -> Change | None:
         """Take back the last edit."""
@@ -170,12 +182,87 @@ class BenchState(t.HasTraits):
     def load_lesion(self, lesion: Lesion) -> Change:
         """Replace the drawing by a lesion, as one edit that can be undone."""
         new = drawing_of(lesion)
-        indices = (new.flat != self.drawing.flat).nonzero()[0]
+        indices = np.flatnonzero(new.flat != self.drawing.flat)
+        entry = {**bytes_edit(indices, new.flat[indices], new.styles), "label": "load"}
         change = self.drawing.configure("load", new.settings, indices, new.flat[indices])
-        self._changed(change, {})
-        for c in range(len(new.styles)):
-            self._note({"kind": "edit", "edit": voxels_edit(new.voxels_of(c), c, fresh=True, overlap=True)})
+        self._changed(change, {}, {"kind": "edit", "edit": entry})
         return change
+
+    def load_file(
+        self, path: Path, use: str, *, label: int | None = None, sequence: str = "", name: str | None = None
+    ) -> str:
+        """Load a file in template space, and return a remark for the user.
+
+        Parameters
+        ----------
+        path : Path
+            A NIfTI file.
+        use : str
+            ``mask`` (or one ``label`` of a label volume; label 0 takes each as a compartment), ``graded`` or ``scan``.
+        sequence : str
+            Of a scan: ``t1``, ``flair``, ``ct`` ...
+        name : str, optional
+            What the user calls the scan; the file's name where None.
+
+        Raises
+        ------
+        ImageError
+            If the file cannot be used; nothing has changed then.
+        """
+        if use == "scan":
+            scan = load_scan(path, sequence or "unknown")
+            self.scans.add(scan if name is None else replace(scan, name=name))
+            self.scans_seq += 1
+            return "; ".join(scan.notes)
+        if use not in ("mask", "graded"):
+            raise BywayError(Fault("load", path.name, f"use {use!r}", "mask, graded or scan"))
+        lesion = load_lesion(path, graded=use == "graded", label=label)
+        self.load_lesion(lesion)
+        return "; ".join(lesion.notes)
+
+    def save_masks(self, folder: Path | None = None) -> list[str]:
+        """Write the drawing to the case folder (or another), and what case.yaml says of it; returns the file names.
+
+        Raises
+        ------
+        BywayError
+            If there is no folder, or nothing is drawn.
+        CaseError
+            If somebody changed case.yaml in between; the masks are written, and both versions of the text are kept.
+        """
+        place = folder if folder is not None else (self.case.folder if self.case is not None else None)
+        if place is None:
+            raise BywayError(Fault("no-case", "save", "a drawing without a case folder", "",
+                                   "open a case, or give a folder: state.save_masks(folder)"))  # fmt: skip
+        written = save_drawing(self.drawing, place)
+        if self.case is not None and place == self.case.folder:
+            spec = {**self.case.spec.lesion.model_dump(), **written}
+            self.case = self.case.with_spec(lesion=spec).save()
+            self.case_seq += 1
+        self._note({"kind": "saved"})
+        return [entry["file"] for entry in written["compartments"]] + [m for m in [written["effect_map"]] if m]
+
+    def recover(self, entries: Iterable[Mapping[str, Any]], author: str) -> int:
+        """Make the edits again that a lost kernel had journalled and not saved; each can be undone.
+
+        Parameters
+        ----------
+        entries : iterable of mapping
+            From ``byway.knowledge.cases.journal.read_journal``.
+        author : str
+            Whose edits.
+
+        Returns
+        -------
+        int
+            How many edits were made again.
+        """
+        edits = unsaved_edits(entries, author)
+        done = sum(apply_edit(self.drawing, edit, self.scans) is not None for edit in edits)
+        if done:
+            self._changed(None, {})
+            self.tell(word("slices.recovered", count=done))
+        return done
 
     def hand(self, down: bool) -> None:
         """The hand is on the table, or off: nothing heavy starts while it is down."""

@@ -7,7 +7,8 @@ stands for all. Coordinates of strokes and polygons are those of :mod:`byway.wid
 from __future__ import annotations
 
 import base64
-from collections.abc import Callable, Mapping
+import zlib
+from collections.abc import Callable
 from dataclasses import replace
 from typing import Any
 
@@ -16,14 +17,15 @@ from numpy.typing import NDArray
 
 from byway.knowledge.faults import BywayError, Fault, nearest
 from byway.knowledge.lesion.shapes import ellipsoid_mask
+from byway.widgets.state import reshape
 from byway.widgets.state.drawing import MOST_COMPARTMENTS, Change, Drawing, Style
 from byway.widgets.state.history import packed_indices, unpacked_indices
+from byway.widgets.state.laying import Edit, laid, number_in, plane_of
 from byway.widgets.state.raster import polygon_voxels, stroke_voxels
 from byway.widgets.state.scans import Scans
 
-__all__ = ["EDITS", "apply_edit", "voxels_edit"]
+__all__ = ["EDITS", "LEANS_ON_SCANS", "apply_edit", "bytes_edit"]
 
-Edit = Mapping[str, Any]
 Indices = NDArray[np.int64]
 
 
@@ -33,7 +35,7 @@ def apply_edit(drawing: Drawing, edit: Edit, scans: Scans) -> Change | None:
     Raises
     ------
     BywayError
-        If the record names no edit, misses a field, or a value is out of range.
+        If the record names no edit, misses a field, or a value is out of range; nothing has changed then.
     """
     name = str(edit.get("op"))
     if name not in EDITS:
@@ -44,66 +46,51 @@ def apply_edit(drawing: Drawing, edit: Edit, scans: Scans) -> Change | None:
         raise BywayError(Fault("edit-field", f"edit {name}", f"no {missing}", "all fields of this edit")) from None
 
 
-def _laid(drawing: Drawing, edit: Edit, indices: Indices) -> Change:
-    """Give voxels to the edit's compartment, or take them away (``mode`` "cut"), sparing what is to be kept."""
-    label = str(edit["op"])
-    if edit.get("mode", "add") == "cut":
-        if edit.get("compartment") is None:
-            return drawing.set(label, indices, 0)
-        keep = np.uint8(255 - drawing.bit(int(edit["compartment"])))
-        return drawing.set(label, indices, drawing.flat[indices] & keep)
-    if edit.get("spare"):  # leaves other compartments as they are
-        indices = indices[drawing.flat[indices] == 0]
-    return drawing.set(label, indices, drawing.bit(int(edit["compartment"])))
-
-
 def _stroke(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
-    radius = float(edit["radius"])
-    if not 0 < radius <= 64:
-        raise BywayError(Fault("brush-radius", "stroke", f"{radius} mm", "more than 0 and at most 64 mm"))
-    voxels = stroke_voxels(drawing.grid.shape, _plane(edit), int(edit["index"]), edit["points"], radius,
+    radius = number_in(edit, "radius", 0.1, 64, "voxels")
+    voxels = stroke_voxels(drawing.grid.shape, plane_of(edit), int(edit["index"]), edit["points"], radius,
                            ball=bool(edit.get("ball")))  # fmt: skip
-    return _laid(drawing, edit, voxels)
+    return laid(drawing, edit, voxels)
 
 
 def _polygon(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
-    return _laid(drawing, edit, polygon_voxels(drawing.grid.shape, _plane(edit), int(edit["index"]), edit["points"]))
-
-
-def _plane(edit: Edit) -> int:
-    plane = int(edit["plane"])
-    if plane not in (0, 1, 2):
-        raise BywayError(Fault("plane", str(edit["op"]), f"plane {plane}", "0 (sagittal), 1 (coronal) or 2 (axial)"))
-    return plane
+    voxels = polygon_voxels(drawing.grid.shape, plane_of(edit), int(edit["index"]), edit["points"])
+    return laid(drawing, edit, voxels)
 
 
 def _ellipsoid(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
-    return _laid(drawing, edit, np.flatnonzero(ellipsoid_mask(edit["centre_mm"], edit["radii_mm"], grid=drawing.grid)))
+    mask = ellipsoid_mask(edit["centre_mm"], edit["radii_mm"], grid=drawing.grid)
+    return laid(drawing, edit, np.flatnonzero(mask))
 
 
 def _clear(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
-    return _laid(drawing, {**edit, "mode": "cut"}, drawing.voxels_of(edit.get("compartment")))
+    return laid(drawing, {**edit, "mode": "cut"}, drawing.voxels_of(edit.get("compartment")))
 
 
-def voxels_edit(indices: Indices, compartment: int, *, fresh: bool = False, overlap: bool = False) -> dict[str, Any]:
-    """The edit that gives voxels (C order, ascending) to a compartment, self-contained for the journal.
-
-    ``fresh`` first empties the compartment; ``overlap`` leaves other compartments' claims standing.
-    """
-    packed = base64.b64encode(packed_indices(indices)).decode("ascii")
-    return {"op": "voxels", "indices": packed, "compartment": compartment, "fresh": fresh, "overlap": overlap}
+def _text(data: bytes) -> str:
+    return base64.b64encode(data).decode("ascii")
 
 
-def _voxels(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
+def bytes_edit(indices: Indices, values: NDArray[np.uint8], styles: tuple[Style, ...] | None = None) -> dict[str, Any]:
+    """The edit that gives voxels (C order, ascending) exact bytes, and compartments where given; leans on nothing."""
+    edit: dict[str, Any] = {"op": "bytes", "indices": _text(packed_indices(indices)),
+                            "values": _text(zlib.compress(values.tobytes(), 1))}  # fmt: skip
+    if styles is not None:
+        edit["styles"] = [dict(vars(style)) for style in styles]
+    return edit
+
+
+def _bytes(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
     indices = unpacked_indices(base64.b64decode(edit["indices"]))
-    if len(indices) and indices[-1] >= drawing.grid.size:
-        raise BywayError(Fault("voxel-index", "drawing", f"voxel {indices[-1]}", f"below {drawing.grid.size}"))
-    bit = np.uint8(drawing.bit(int(edit["compartment"])))
-    every = np.union1d(indices, drawing.voxels_of(int(edit["compartment"]))) if edit.get("fresh") else indices
-    new = drawing.flat[every] & np.uint8(255 - bit) if edit.get("fresh") else drawing.flat[every]
-    inside = np.isin(every, indices, assume_unique=True) if edit.get("fresh") else slice(None)
-    new[inside] = new[inside] | bit if edit.get("overlap") else bit
-    return drawing.set("voxels", every, new)
+    values = np.frombuffer(zlib.decompress(base64.b64decode(edit["values"])), np.uint8)
+    if len(indices) != len(values) or (len(indices) and indices[-1] >= drawing.grid.size):
+        raise BywayError(Fault("voxel-bytes", "drawing", f"{len(indices)} places, {len(values)} bytes",
+                               "as many of each, all on the grid"))  # fmt: skip
+    label = str(edit.get("label", "bytes"))
+    if "styles" not in edit:
+        return drawing.set(label, indices, values)
+    styles = tuple(Style.of(style) for style in edit["styles"])
+    return drawing.configure(label, replace(drawing.settings, styles=styles), indices, values)
 
 
 def _compartment(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
@@ -127,21 +114,31 @@ def _remove_compartment(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
         raise BywayError(Fault("compartments", "drawing", "the only compartment", "", "clear it instead"))
     indices = drawing.voxels_of(None)
     old = drawing.flat[indices]
-    new = (old & np.uint8((1 << c) - 1)) | ((old >> 1) & np.uint8(255 & ~((1 << c) - 1)))
+    below = np.uint8((1 << c) - 1)
+    new = (old & below) | ((old >> 1) & np.uint8(255 - below))
     styles = tuple(s for i, s in enumerate(drawing.styles) if i != c)
     moved = old != new
-    return drawing.configure("remove_compartment", replace(drawing.settings, styles=styles), indices[moved], new[moved])
+    settings = replace(drawing.settings, styles=styles)
+    return drawing.configure("remove_compartment", settings, indices[moved], new[moved])
 
+
+LEANS_ON_SCANS = frozenset({"spread", "threshold"})
 
 EDITS: dict[str, Callable[[Drawing, Edit, Scans], Change | None]] = {
     "stroke": _stroke,
     "polygon": _polygon,
     "ellipsoid": _ellipsoid,
     "clear": _clear,
-    "voxels": _voxels,
+    "bytes": _bytes,
     "compartment": _compartment,
     "add_compartment": _add_compartment,
     "remove_compartment": _remove_compartment,
+    "resize": reshape.resize,
+    "fill_between": reshape.fill_between,
+    "mirror": reshape.mirrored,
+    "place": reshape.place,
+    "spread": reshape.spread,
+    "threshold": reshape.threshold,
     "undo": lambda drawing, edit, scans: drawing.undo(),
     "redo": lambda drawing, edit, scans: drawing.redo(),
 }

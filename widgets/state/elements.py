@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -46,8 +47,7 @@ class ElementMap:
         _, first, code = np.unique(signature, return_index=True, return_inverse=True)
         rows = [np.concatenate([t.members[t.offsets[row] : t.offsets[row + 1]] for t in tables]) for row in first]
         offsets = np.cumsum([0, 0, *(len(row) for row in rows)]).astype(np.uint32)
-        kind = np.uint16 if len(rows) < 65_535 else np.uint32
-        codes = np.zeros(index.geometry.grid.size, kind)
+        codes: Any = np.zeros(index.geometry.grid.size, np.uint16 if len(rows) < 65_535 else np.uint32)
         codes[index.voxel_of_row] = code.reshape(-1) + 1
         members = np.concatenate(rows) if rows else np.empty(0)
         return cls(codes.reshape(index.geometry.grid.shape), offsets, members.astype(np.uint16),

@@ -42,8 +42,8 @@ class Science(Protocol):
     ) -> tuple[Any, Any]:
         """The ensemble and the explanation; calls ``check`` between parts, which may raise to stop it."""
 
-    def map_of(self, kind: str, lesion: Lesion, ensemble: Any) -> NDArray[np.uint8] | None:
-        """A map over the grid, 0 to 255: ``uncharted`` white matter, ``chance`` of being hit; None if not known."""
+    def map_of(self, kind: str) -> NDArray[np.uint8] | None:
+        """A map over the grid, 0 to 255: ``uncharted`` white matter; None where it is not known."""
 
 
 class NoScience:
@@ -64,6 +64,6 @@ class NoScience:
         """Nothing is known."""
         return None, None
 
-    def map_of(self, kind: str, lesion: Lesion, ensemble: Any) -> NDArray[np.uint8] | None:
+    def map_of(self, kind: str) -> NDArray[np.uint8] | None:
         """Nothing is known."""
         return None
