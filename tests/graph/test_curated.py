@@ -11,6 +11,8 @@ from byway.knowledge.graph.checks import NORMS, check_graph
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.loading import load_graph
 from byway.knowledge.graph.networks import function_networks
+from byway.knowledge.space.atlas import load_template
+from byway.knowledge.space.ends import geometry_ends
 
 LEAST = {"regions": 60, "pathways": 45, "segments": 90, "functions": 50, "routes": 80, "signs": 100, "claims": 350}
 # Bundles on whose part in a function the field disagrees: both sides must stand.
@@ -33,6 +35,12 @@ def hpo_labels() -> dict[str, str]:
 def test_no_rule_is_broken(graph: Graph) -> None:
     """Not even a rule that says something is incomplete."""
     assert [f"{fault.rule}: {fault}" for fault in check_graph(graph)] == []
+
+
+def test_routes_are_joined_by_the_geometry_that_is_used(graph: Graph) -> None:
+    """With parcels and core lines in place of seeds and waypoints, every route is joined and every end in place."""
+    template = load_template(graph, progress=False)
+    assert [str(fault) for fault in check_graph(graph, geometry_ends(template))] == []
 
 
 @pytest.mark.parametrize("kind", LEAST)
