@@ -8,12 +8,15 @@ from typing import Any, ClassVar, get_args
 
 import anywidget
 import ipywidgets
+import numpy as np
 import traitlets as t
 
 from byway.knowledge.cases.case import Case, open_case
 from byway.knowledge.cases.explaining import desk_of
 from byway.knowledge.cases.model import CaseFile, PersonSpec
 from byway.knowledge.faults import BywayError, Fault
+from byway.knowledge.lesion.lesion import Lesion
+from byway.knowledge.space.grid import TEMPLATE_GRID
 from byway.widgets.accounts import AccountsPanel
 from byway.widgets.findings import FindingsPanel
 from byway.widgets.front import load_css, load_esm
@@ -135,7 +138,10 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         four = {"slices": self.slices, "hits": self.hits, "findings": self.findings, "accounts": self.accounts}
         for name, panel in four.items():
             panel.add_class(f"byway-at-{name}")
-        grid = ipywidgets.Box(list(four.values()))
+        columns = [ipywidgets.Box([self.slices, self.findings]), ipywidgets.Box([self.hits, self.accounts])]
+        for column in columns:
+            column.add_class("byway-column")
+        grid = ipywidgets.Box(columns)
         grid.add_class("byway-grid")
         self.tabs = _Tabs(words=section("bench"), names=list(DECK), shown=next(iter(DECK)))
         self._place = ipywidgets.Box([])
@@ -175,6 +181,16 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         super().close()
 
 
+def middle_mm(lesion: Lesion) -> tuple[float, float, float]:
+    """The lesion's voxel nearest its centre, MNI mm; the origin for an empty one."""
+    voxels = lesion.effect_voxels[0]
+    if len(voxels) == 0:
+        return (0.0, 0.0, 0.0)
+    points = TEMPLATE_GRID.to_mm(np.stack(np.unravel_index(voxels, TEMPLATE_GRID.shape), axis=1))
+    x, y, z = points[np.square(points - points.mean(axis=0)).sum(axis=1).argmin()]
+    return (float(x), float(y), float(z))
+
+
 def bench(case: Case | str | Path, *, draws: int = 200, settle: bool = True) -> Bench:
     """Open a case on the bench.
 
@@ -199,6 +215,7 @@ def bench(case: Case | str | Path, *, draws: int = 200, settle: bool = True) -> 
     """
     opened = case if isinstance(case, Case) else open_case(case)
     state = BenchState(opened, LiveScience(desk_of(opened), draws=draws))
+    state.cursor_mm = middle_mm(state.lesion)
     if settle:
         state.settle()
     return Bench(state)

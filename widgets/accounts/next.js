@@ -7,16 +7,17 @@ function bitsBar(bits, most) {
 }
 
 /** Which account would lead after an outcome, by its number and title, and how likely it would then be. */
-function leader(row, outcome, words) {
+function leader(row, outcome, kinds, words) {
   const rank = row[`rank_if_${outcome}`];
   const chance = number(`next_tests/${row.sign}@${row.side}/p_if_${outcome}`, row[`p_if_${outcome}`], percent(row[`p_if_${outcome}`]));
   const title = row[`if_${outcome}`];
-  if (rank === 0) return h("span", { title }, h("span", { class: "bw-rank-tag" }, "1"), " ", words.still_leads, ", ", chance);
-  return h("span", {}, rank === null ? null : [h("span", { class: "bw-rank-tag" }, rank + 1), " "], title, ", ", chance);
+  if (rank === null) return h("span", {}, title, ", ", chance);
+  const told = rank === 0 ? words.still_leads : words[`account_${kinds[rank]}`] || title;
+  return h("span", { title }, h("span", { class: "bw-rank-tag" }, rank + 1), ` ${told}, `, chance);
 }
 
 /** Untested signs, most telling first. */
-export function nextTests(rows, words) {
+export function nextTests(rows, kinds, words) {
   const most = Math.max(1e-9, ...rows.map((row) => row.bits));
   return [h("h3", {}, words.next_tests), h("p", { class: "bw-soft" }, words.next_tests_hint),
     h("table", { class: "bw-next-table" },
@@ -27,7 +28,7 @@ export function nextTests(rows, words) {
         return h("tr", {}, h("th", { scope: "row" }, signName(row, words)), h("td", { class: "bw-bits-cell" }, bitsBar(row.bits, most)),
           h("td", { class: "bw-right" }, number(`${path}/bits`, row.bits, fixed(row.bits, 2))),
           h("td", { class: "bw-right" }, number(`${path}/minutes`, row.minutes, fixed(row.minutes, 0)), ` ${words.min}`),
-          h("td", {}, leader(row, "present", words)), h("td", {}, leader(row, "absent", words)));
+          h("td", {}, leader(row, "present", kinds, words)), h("td", {}, leader(row, "absent", kinds, words)));
       })))];
 }
 
@@ -37,4 +38,12 @@ export function nextImages(rows, words, select) {
   return [h("h3", {}, words.next_images), h("p", { class: "bw-soft" }, words.next_images_hint),
     h("ul", { class: "bw-images" }, rows.map((row) => h("li", {}, chip(row.element, words, select), bitsBar(row.bits, most),
       h("span", {}, number(`next_images/${row.element.id}/bits`, row.bits, fixed(row.bits, 2)), ` ${words.bits_unit}`))))];
+}
+
+/** What knowing one thing about the person or the scan for certain would tell. */
+export function nextAxes(rows, words) {
+  const most = Math.max(1e-9, ...rows.map((row) => row.bits));
+  return [h("h3", {}, words.next_axes), h("p", { class: "bw-soft" }, words.next_axes_hint),
+    h("ul", { class: "bw-images" }, rows.map((row) => h("li", {}, h("span", { class: "bw-axis" }, h("strong", {}, words[`axis_${row.axis}`]), h("span", { class: "bw-soft" }, ` ${row.image}`)), bitsBar(row.bits, most),
+      h("span", {}, number(`next_axes/${row.axis}/bits`, row.bits, fixed(row.bits, 2)), ` ${words.bits_unit}`))))];
 }

@@ -1,7 +1,8 @@
 // The accounts panel: rivals side by side, each as a card, then what would tell them apart.
-import { fill, frame, h, keep, mark, number, percent, say, setNumber, watch } from "../front/kit.js";
+import { fill, frame, h, keep, mark, number, percent, say, segmented, setNumber, watch } from "../front/kit.js";
 import { makeCard } from "./card.js";
-import { nextImages, nextTests } from "./next.js";
+import { makeComparison } from "./compare.js";
+import { nextAxes, nextImages, nextTests } from "./next.js";
 import { redo } from "./parts.js";
 
 function share(account, words) {
@@ -25,7 +26,12 @@ function render({ model, el }) {
     model.save_changes();
   };
   const busy = h("span", { class: "bw-busy bw-soft", role: "status" });
-  const { panel, body, foot } = frame(el, words, "accounts", busy);
+  let view = "cards";
+  const views = segmented(words.views, [["cards", words.view_cards], ["next", words.view_next], ["compare", words.view_compare]], view, (which) => {
+    view = which;
+    draw();
+  });
+  const { panel, body, foot } = frame(el, words, "accounts", busy, views);
   const strip = h("div", { class: "bw-strip", role: "group", "aria-label": words.strip_label });
   const cards = h("div", { class: "bw-cards" });
   const others = h("p", { class: "bw-soft bw-others" });
@@ -33,7 +39,11 @@ function render({ model, el }) {
   const empty = h("p", { class: "bw-empty" }, words.nothing);
   const tests = h("section", { class: "bw-next", "aria-label": words.next_tests });
   const images = h("section", { class: "bw-next", "aria-label": words.next_images });
-  body.append(h("p", { class: "bw-lead bw-soft" }, words.lead), strip, cards, others, more, empty, tests, images);
+  const axes = h("section", { class: "bw-next", "aria-label": words.next_axes });
+  const ranking = h("div", {}, cards, others, more);
+  const ahead = h("div", {}, tests, images, axes);
+  const comparison = makeComparison(words);
+  body.append(h("p", { class: "bw-lead bw-soft" }, words.lead), strip, ranking, ahead, comparison.node, empty);
   const uncharted = number();
   foot.append(h("p", {}, uncharted, " ", words.uncharted), h("p", {}, words.anatomy_note));
   let all = false;
@@ -52,7 +62,13 @@ function render({ model, el }) {
     const few = all ? accounts : accounts.filter((a, i) => i < 4 || a.is_plain);
     keep(strip, accounts, (a) => a.key, (a) => {
       const node = share(a, words);
-      node.addEventListener("click", () => { all = all || !few.includes(a); draw(); reveal(a.key); });
+      node.addEventListener("click", () => {
+        all = all || !few.includes(a);
+        view = "cards";
+        views.show(view);
+        draw();
+        reveal(a.key);
+      });
       return node;
     }, (node, a) => node.change(a));
     keep(cards, few, (a) => a.key, (a) => makeCard(a, words, select), (node, a) => node.change(a));
@@ -67,9 +83,13 @@ function render({ model, el }) {
     more.hidden = accounts.length <= few.length && !all;
     say(more, all ? words.show_fewer : fill(words.show_all, { count: accounts.length }));
     empty.hidden = accounts.length > 0;
-    redo(tests, told.next_tests || [], (rows) => (rows.length ? nextTests(rows, words) : []));
+    redo(tests, told.next_tests || [], (rows) => (rows.length ? nextTests(rows, accounts.map((a) => a.kind), words) : [h("p", { class: "bw-soft" }, words.next_none)]));
     redo(images, told.next_images || [], (rows) => (rows.length ? nextImages(rows, words, select) : []));
-    tests.hidden = !tests.firstChild;
+    redo(axes, told.next_axes || [], (rows) => (rows.length ? nextAxes(rows, words) : []));
+    comparison.change(accounts);
+    ranking.hidden = view !== "cards" || !accounts.length;
+    ahead.hidden = view !== "next" || !accounts.length;
+    comparison.node.hidden = view !== "compare" || accounts.length < 2;
     images.hidden = !images.firstChild;
     setNumber(uncharted, "uncharted_share", told.uncharted_share, percent(told.uncharted_share));
     foot.firstChild.hidden = told.uncharted_share === undefined || told.uncharted_share === null;

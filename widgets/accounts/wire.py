@@ -34,6 +34,13 @@ def told_of(explanation: Any, graph: Any) -> dict[str, Any]:
         "other_posterior": plain(explanation.other_posterior),
         "next_tests": plain(_next_tests(explanation)),
         "next_images": plain(_next_images(explanation.next_images, graph)),
+        "next_axes": plain(
+            [
+                {name: row[name] for name in ("axis", "bits", "image")}
+                for row in _rows(explanation.next_axes)
+                if row["bits"] >= LEAST_BITS
+            ]
+        ),
         "uncharted_share": plain(explanation.uncharted_share),
     }
 
