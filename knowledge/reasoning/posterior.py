@@ -189,7 +189,8 @@ def with_findings(reckoning: Reckoning, findings: Sequence[Finding]) -> Reckonin
             for outside in range(_OUTSIDE):
                 seen = outside_tails(tails, reckoning.outside_rates) if outside else tails
                 logs[f, setting, outside] = np.log(model.likelihood(finding, seen, reckoning.lapse))
-    return replace(reckoning, findings=tuple(findings), finding_logs=logs.reshape(len(findings), len(SCENARIOS), -1))
+    shape = (len(findings), len(SCENARIOS), reckoning.states.n_draws)
+    return replace(reckoning, findings=tuple(findings), finding_logs=logs.reshape(shape))
 
 
 def without_finding(reckoning: Reckoning, number: int) -> Reckoning:
