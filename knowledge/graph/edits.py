@@ -13,12 +13,12 @@ from typing import Any
 
 from byway.knowledge.faults import Fault, FaultReport, GraphError
 from byway.knowledge.graph.checks import check_graph
-from byway.knowledge.graph.content import Content, Kind
+from byway.knowledge.graph.content import Content, Kind, Origin
 from byway.knowledge.graph.graph import Graph, graph_from
 from byway.knowledge.graph.layers import Change, apply_overlays, diff
 from byway.knowledge.graph.overlays import Action, Entry, Overlay, Slot
 
-__all__ = ["Edit", "Editing", "Step", "Trial", "make_edit", "use_draft", "withdraw"]
+__all__ = ["Edit", "Editing", "Step", "Trial", "make_edit", "take_over", "use_draft", "withdraw"]
 
 
 @dataclass(frozen=True)
@@ -155,6 +155,17 @@ def use_draft(overlay: Overlay, slot: Slot) -> Edit:
     if entry is None or not entry.draft:
         raise GraphError(Fault("edit", f"{overlay.name}: {' '.join(slot)}", "no draft there", remedy="check the key"))
     return Edit((Step(slot, entry, replace(entry, draft=False)),))
+
+
+def take_over(overlay: Overlay, entry: Entry, source: Overlay) -> Edit:
+    """The edit that accepts an entry of another overlay into this one, with its own author and date.
+
+    What this overlay holds in the same slot is replaced; :func:`~byway.knowledge.graph.layers.clashes` shows both.
+    """
+    author, date = entry.author or source.author, entry.date or source.date
+    author = "" if author == overlay.author else author
+    date = "" if date == overlay.date else date
+    return Edit((_filled(overlay, replace(entry, author=author, date=date, origin=Origin("", "", 0))),))
 
 
 @dataclass(frozen=True)

@@ -15,7 +15,7 @@ from byway.knowledge.graph.layers import apply_overlays
 from byway.knowledge.graph.overlay_files import read_overlay
 from byway.knowledge.graph.overlays import Overlay
 
-__all__ = ["base_content", "graph_with", "load_graph"]
+__all__ = ["base_content", "graph_with", "joint_faults", "load_graph"]
 
 
 @lru_cache(maxsize=1)
@@ -59,3 +59,22 @@ def graph_with(base: Content, overlays: Iterable[Overlay]) -> Graph:
         report = FaultReport([fault for fault in report if (fault.rule, fault.where, fault.found) not in known])
     report.raise_if_grave(GraphError)
     return graph_from(content)
+
+
+def joint_faults(base: Content, first: Overlay, second: Overlay) -> FaultReport:
+    """Grave faults that arise only when two overlays lie on a base together, the second above the first.
+
+    One retires the source that the other's claim cites, both add the same key: each may be used, not both.
+
+    Raises
+    ------
+    GraphError
+        One of the two cannot be used by itself.
+    """
+    graph_with(base, [first])
+    graph_with(base, [second])
+    try:
+        graph_with(base, [first, second])
+    except GraphError as error:
+        return FaultReport(list(error.faults))
+    return FaultReport()

@@ -61,11 +61,11 @@ def coverage_of_pathways(graph: Graph) -> pd.DataFrame:
     Returns
     -------
     DataFrame
-        A row a pathway: pathway, name, kind, segments, studied (of its least studied segment), claims (about the
-        pathway or a segment of it), strong, moderate, weak (claims by grade), disputes (disputing claims and
-        overlays' disputes), sources (different ones behind the claims), read_share (of those sources, NaN without
-        any), one_source and memory_only (claims that rest on one source, on none that was read), thin (hardly
-        studied, or fewer than three sources), words.
+        A row a pathway: pathway, name, kind, segments, studied (of its best studied segment), hardly (number of its
+        segments that are hardly studied), claims (about the pathway or a segment of it), strong, moderate, weak
+        (claims by grade), disputes (disputing claims and overlays' disputes), sources (different ones behind the
+        claims), read_share (of those sources, NaN without any), one_source and memory_only (claims that rest on one
+        source, on none that was read), thin (all of it hardly studied, or fewer than three sources), words.
     """
     rows: list[dict[str, Any]] = []
     order = ("well", "moderately", "hardly")
@@ -74,7 +74,8 @@ def coverage_of_pathways(graph: Graph) -> pd.DataFrame:
         claims = list({claim.key: claim for key in keys for claim in _about(graph, key)}.values())
         sources = {source.key: source for claim in claims for source in graph.sources_of(claim)}
         read = [source for source in sources.values() if source.checked == "read"]
-        studied = max((graph.segments[key].studied for key in pathway.segments), key=order.index, default="hardly")
+        levels = [graph.segments[key].studied for key in pathway.segments]
+        studied = min(levels, key=order.index, default="hardly")
         overlay_disputes = sum(len(graph.disputes.get(("claim", claim.key), ())) for claim in claims)
         thin = studied == "hardly" or len(sources) < 3
         rows.append(
@@ -84,6 +85,7 @@ def coverage_of_pathways(graph: Graph) -> pd.DataFrame:
                 "kind": pathway.kind,
                 "segments": len(pathway.segments),
                 "studied": studied,
+                "hardly": levels.count("hardly"),
                 "claims": len(claims),
                 **{grade: sum(claim.grade == grade for claim in claims) for grade in ("strong", "moderate", "weak")},
                 "disputes": sum(claim.stance == "disputes" for claim in claims) + overlay_disputes,

@@ -12,7 +12,7 @@ from strategies import Wish, edit_wishes
 
 from byway.knowledge.faults import GraphError
 from byway.knowledge.graph.checks import check_graph
-from byway.knowledge.graph.edits import Editing, make_edit, use_draft, withdraw
+from byway.knowledge.graph.edits import Editing, make_edit, take_over, use_draft, withdraw
 from byway.knowledge.graph.files import read_curated
 from byway.knowledge.graph.graph import graph_from
 from byway.knowledge.graph.networks import function_networks
@@ -178,3 +178,21 @@ def test_author_and_date_of_an_edit() -> None:
     graph = Editing(BASE, edit.apply(EMPTY)).graph
     assert graph.disputes["claim", "bow_exists"][0].author == "B. Writer"
     assert graph.disputes["claim", "bow_exists"][0].date == "2026-12-01"
+
+
+def test_entries_of_another_overlay_are_taken_one_by_one() -> None:
+    """An accepted entry keeps its author and date, replaces what stood in its slot, and can be undone."""
+    theirs = parse_overlay(
+        "name: Lab\nauthor: C. Other\ndate: 2026-11-01\n"
+        "change: {signs: {weak_hand: {minutes: 4}, poor_echo: {minutes: 4}}}\n"
+    )
+    editing = Editing(BASE, EMPTY)
+    editing.keep(make_edit(editing.overlay, "change", "sign", "weak_hand", {"minutes": 3}))
+    mine = editing.overlay
+    editing.keep(take_over(editing.overlay, theirs.entries[1], theirs))
+    entry = editing.overlay.entries[0]
+    assert (entry.author, entry.date, entry.body) == ("C. Other", "2026-11-01", {"minutes": 4})
+    assert editing.graph.signs["weak_hand"].minutes == 4
+    assert editing.graph.signs["poor_echo"].minutes == 2
+    editing.undo()
+    assert editing.overlay == mine

@@ -11,7 +11,7 @@ from byway.knowledge.faults import GraphError
 from byway.knowledge.graph.files import read_curated
 from byway.knowledge.graph.graph import graph_from
 from byway.knowledge.graph.layers import apply_overlays, clashes, diff
-from byway.knowledge.graph.loading import graph_with, load_graph
+from byway.knowledge.graph.loading import graph_with, joint_faults, load_graph
 from byway.knowledge.graph.overlay_files import read_overlay, save_overlay
 from byway.knowledge.graph.overlays import overlay_text, parse_overlay
 
@@ -248,3 +248,20 @@ def test_new_segment_joins_its_pathway() -> None:
     assert graph.pathways["bow"].segments == ("bow.long", "bow.short")
     words = [change.words for change in diff(load_graph(folder=SMALL), graph)]
     assert words == ['segment bow.short added: "Short part" (Ward)']
+
+
+def test_overlays_that_fit_apart_and_not_together() -> None:
+    """One retires the function that the other's sign depends on: told as the fault that both together have."""
+    base = read_curated(SMALL)
+    cut = parse_overlay(
+        HEAD + "retire: {functions: {balance: {reason: x}}, signs: {unsteady: {reason: x}},"
+        " claims: {worm_serves_balance: {reason: x}, balance_shows_as_unsteady: {reason: x}}}\n"
+    )
+    lean = parse_overlay(
+        HEAD.replace("Ward", "Lab")
+        + "change: {signs: {clumsy_pair: {depends: [{function: two_hands}, {function: balance}]}}}\n"
+    )
+    faults = joint_faults(base, cut, lean)
+    assert [fault.rule for fault in faults] == ["unknown-key"]
+    assert "function 'balance' is not there" in str(faults.faults[0])
+    assert len(joint_faults(base, lean, parse_overlay(HEAD))) == 0
