@@ -1,5 +1,5 @@
 // One film: a slice with its layers, and above it a clear sheet for crosshair, cursor and what a tool is about to do.
-import { h, mark } from "../front/kit.js";
+import { h, mark, say } from "../front/kit.js";
 import { flipOf, letters, Sight } from "./geometry.js";
 import { FILM, LINE } from "./looks.js";
 
@@ -16,7 +16,9 @@ export class Film {
     this.base = h("canvas", { class: "bs-sheet", "aria-hidden": "true" });
     this.top = h("canvas", { class: "bs-sheet bs-top", "aria-hidden": "true" });
     this.letters = ["left", "right", "top", "bottom"].map((side) => h("span", { class: `bs-letter bs-at-${side}` }));
-    this.place = h("span", { class: "bs-place" });
+    this.name = h("span", { class: "bs-film-name" }, view.words[NAMES[plane]]);
+    this.position = h("span", {});
+    this.place = h("span", { class: "bs-place" }, this.name, " ", this.position);
     const { words } = view;
     this.focus = h("button", { type: "button", class: "bs-enlarge", title: words.enlarge, "aria-label":
       `${words.enlarge}: ${words[NAMES[plane]]}`, onclick: () => view.look.set({ focus: plane }) }, "⤢");
@@ -85,12 +87,10 @@ export class Film {
     layers.draw(ctx, this.plane, this.index, this.sight, this.version, this.ratio);
     const mm = this.view.store.grid.toMm(this.view.cursor)[this.plane];
     const side = this.plane !== 0 ? "" : mm < 0 ? ` ${words.left_letter}` : mm > 0 ? ` ${words.right_letter}` : "";
-    const text = `${words[NAMES[this.plane]]} ${"xyz"[this.plane]} ${String(mm).replace("-", "\u2212")}${side}`;
-    if (this.place.textContent !== text) this.place.textContent = text;
+    say(this.position, `${"xyz"[this.plane]} ${String(mm).replace("-", "\u2212")}${side}`);
     letters(this.plane, radiological).forEach((letter, n) => {
       const node = this.letters[n];
-      const shown = words[`${letter}_letter`];
-      if (node.textContent !== shown) node.textContent = shown;
+      say(node, words[`${letter}_letter`]);
       mark(node, "data-letter", letter);
       mark(node, "title", words[letter]);
     });

@@ -15,7 +15,7 @@ export class Projection {
     this.letters = ["left", "right", "top", "bottom"].map((side) => h("span", { class: `bs-letter bs-at-${side}` }));
     this.axis = segmented(words.project_along, [["2", words.axial_short], ["1", words.coronal_short], ["0",
       words.sagittal_short]], String(look.project), (key) => look.set({ project: Number(key) }));
-    this.name = h("span", { class: "bs-place" }, words.projection);
+    this.name = h("span", { class: "bs-place" }, h("span", { class: "bs-film-name" }, words.projection));
     this.node = h("div", { class: "bs-film bs-projection", role: "group", "aria-label": words.projection }, this.canvas,
       ...this.letters, this.name, this.axis);
     this.sight = new Sight();

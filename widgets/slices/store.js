@@ -58,11 +58,13 @@ export class Store {
   /** A volume by name; asks the kernel for it once. */
   volume(name) {
     const there = this.volumes.get(name);
-    if (!there && this.grid && !this.wanted.has(name)) {
-      this.wanted.add(name);
-      this.send("want", { volume: name });
-    }
+    if (!there && this.grid && !this.wanted.has(name)) this.ask(name);
     return there;
+  }
+
+  ask(name) {
+    this.wanted.add(name);
+    this.send("want", { volume: name });
   }
 
   /** Sends a change made here and returns its number. */
@@ -81,6 +83,10 @@ export class Store {
     const { kind } = message;
     if (message.origin && message.origin.view === this.id) {
       this.answered = Math.max(this.answered, message.origin.n || 0);
+    }
+    if (this.behind && this.waiting === 0) {
+      this.behind = false;
+      this.ask("bits");
     }
     if (kind === "table") this.takeTable(message);
     else if (kind === "volume") this.takeVolume(message, arrays.data.data);
@@ -107,17 +113,21 @@ export class Store {
     this.gradedScale = message.graded;
     this.count(message);
     this.revision = message.revision;
-    for (const name of ["bits", "graded"]) this.forget(name);
+    this.forget("graded");
     this.tell("table");
-    this.volume("bits");
+    this.ask("bits");
   }
 
   forget(name) {
     this.wanted.delete(name);
-    if (name !== "bits") this.volumes.delete(name);
+    this.volumes.delete(name);
   }
 
   takeVolume(message, data) {
+    if (message.volume === "bits" && this.bits && this.waiting > 0) {
+      this.behind = true; // it lacks strokes that are on their way: ask again when they have been worked in
+      return;
+    }
     this.volumes.set(message.volume, data);
     if (message.volume === "bits") {
       this.revision = message.revision;
@@ -137,10 +147,8 @@ export class Store {
       this.tell("styles");
     }
     const mine = message.origin.view === this.id;
-    if (gap) {
-      this.forget("bits");
-      this.volume("bits");
-    } else if (!(mine && message.origin.n < this.newest) && this.bits && bytes.length) this.lay(message.box, bytes);
+    if (gap) this.ask("bits");
+    else if (!(mine && message.origin.n < this.newest) && this.bits && bytes.length) this.lay(message.box, bytes);
     this.tell("patch", message);
   }
 
