@@ -1,4 +1,4 @@
-"""A bare page with a stand-in model: a panel's front end without notebook, kernel or network."""
+"""A panel of `byway.widgets.panel` on a bare page: its real traits, its real ES module, no notebook and no network."""
 
 from __future__ import annotations
 
@@ -6,62 +6,80 @@ import base64
 import json
 from typing import Any
 
-from byway.widgets.front import load_css, load_esm
-
-__all__ = ["DARK", "changed", "mount", "sent"]
+__all__ = ["Bare"]
 
 # The theme variables of JupyterLab that panels lean on, in a dark theme.
-DARK = (
-    "body { --jp-ui-font-color1: rgba(255,255,255,.87); --jp-ui-font-color2: rgba(255,255,255,.6);"
-    " --jp-layout-color0: #111; --jp-layout-color1: #1c1c1e; --jp-layout-color2: #424242; --jp-border-color2: #424242;"
-    " background: #111; }"
+_DARK = (
+    "--jp-ui-font-color1: rgba(255,255,255,.87); --jp-ui-font-color2: rgba(255,255,255,.6);"
+    " --jp-layout-color1: #1c1c1e; background: #111"
 )
 
 _MODEL = """
-class Model {
-  constructor(state) { this.state = state; this.heard = {}; this.sent = []; this.saved = []; this.dirty = {}; }
-  get(name) { return this.state[name]; }
-  set(name, value) { this.state[name] = value; this.dirty[name] = value; this.fire(`change:${name}`); }
-  save_changes() { this.saved.push(this.dirty); this.dirty = {}; }
-  on(event, call) { (this.heard[event] ||= new Set()).add(call); }
-  off(event, call) { this.heard[event]?.delete(call); }
-  fire(event, ...more) { for (const call of [...(this.heard[event] || [])]) call(...more); }
-  send(message) { this.sent.push(message); }
-}
-const thaw = (state) => Object.fromEntries(Object.entries(state).map(([k, v]) =>
-  [k, v && v.$bytes !== undefined ? new DataView(Uint8Array.from(atob(v.$bytes), (c) => c.charCodeAt(0)).buffer) : v]));
+window.outbox = [];
+window.heard = {};
+const thaw = (v) => (v && v.$bytes !== undefined ? new DataView(Uint8Array.from(atob(v.$bytes), (c) => c.charCodeAt(0)).buffer) : v);
+window.start = async (source, state) => {
+  const traits = Object.fromEntries(Object.entries(state).map(([k, v]) => [k, thaw(v)]));
+  let changed = new Set();
+  const fire = (event, ...more) => { for (const call of [...(heard[event] || [])]) call(...more); };
+  window.model = {
+    get: (name) => traits[name],
+    set: (name, value) => { traits[name] = value; changed.add(name); fire(`change:${name}`); },
+    save_changes: () => { for (const name of changed) outbox.push({ trait: name, value: traits[name] }); changed = new Set(); },
+    send: (content) => outbox.push({ content }),
+    on: (event, call) => { (heard[event] ||= new Set()).add(call); },
+    off: (event, call) => { heard[event]?.delete(call); },
+  };
+  window.put = (now) => { for (const [k, v] of Object.entries(now)) traits[k] = thaw(v); for (const k of Object.keys(now)) fire(`change:${k}`); };
+  const url = URL.createObjectURL(new Blob([source], { type: 'text/javascript' }));
+  window.stop = await (await import(url)).default.render({ model, el: document.getElementById('here') });
+};
 """
 
 
-def _frozen(state: dict[str, Any]) -> str:
-    plain = {k: {"$bytes": base64.b64encode(v).decode()} if isinstance(v, bytes) else v for k, v in state.items()}
-    return json.dumps(plain).replace("<", "\\u003c")
+def _frozen(value: Any) -> Any:
+    return {"$bytes": base64.b64encode(value).decode()} if isinstance(value, bytes) else value
 
 
-def mount(page: Any, entry: str, css: tuple[str, ...], state: dict[str, Any], *, width: int = 820,
-          dark: bool = False) -> None:  # fmt: skip
-    """Show a panel on an empty page; afterwards ``window.model`` is its model and ``window.close_view`` removes it."""
-    theme = DARK if dark else "body { background: #fff; }"
-    page.set_content(
-        f'<!doctype html><meta charset="utf-8"><style>{theme} body {{ margin: 16px; }} #here {{ width: {width}px; }}'
-        f"{load_css(*css)}</style><body data-jp-theme-light={'false' if dark else 'true'}><div id=here></div>"
-    )
-    esm = load_esm(entry).replace("export default", "const panel =")
-    page.add_script_tag(type="module", content=f"{esm}{_MODEL}\nwindow.thaw = thaw;"
-                        f"window.model = new Model(thaw({_frozen(state)}));"
-                        "window.close_view = await panel.render({ model: window.model, el: document.querySelector('#here') });"
-                        "document.body.dataset.ready = 'yes';")  # fmt: skip
-    page.wait_for_selector("body[data-ready=yes]", state="attached")
+class Bare:
+    """One panel on a page; ``window.model`` is its model, ``window.stop()`` takes the view away.
 
+    Parameters
+    ----------
+    page : playwright page
+    panel : Panel
+        A real panel; what it sends reaches the page at once, what the page says reaches it with :meth:`carry`.
+    width : int
+        Width of the place that the panel fills, px.
+    dark : bool
+        Whether the page has a dark theme.
+    """
 
-def changed(page: Any, **state: Any) -> None:
-    """Change traits as the kernel would, all before any listener hears of it."""
-    page.evaluate(
-        f"() => {{ const now = thaw({_frozen(state)}); Object.assign(model.state, now);"
-        " for (const name of Object.keys(now)) model.fire(`change:${name}`); }"
-    )
+    def __init__(self, page: Any, panel: Any, *, width: int = 860, dark: bool = False) -> None:
+        self.page, self.panel = page, panel
+        self.errors: list[str] = []
+        page.on("pageerror", lambda error: self.errors.append(str(error)))
+        page.set_content(
+            f'<!doctype html><html lang="en"><meta charset="utf-8"><title>byway</title><style>{panel._css}</style>'
+            f'<body data-jp-theme-light="{"false" if dark else "true"}" style="margin: 16px; {_DARK if dark else ""}">'
+            f'<main id="here" style="width: {width}px"></main></body></html>'
+        )
+        page.add_script_tag(content=_MODEL)
+        names = [n for n in panel.keys if not n.startswith("_") and n not in ("layout", "tabbable", "tooltip")]
+        state = {name: _frozen(getattr(panel, name)) for name in names}
+        panel.observe(lambda change: self.put(**{change.name: change.new}), names)
+        page.evaluate("([source, state]) => start(source, state)", [str(panel._esm), json.loads(json.dumps(state))])
 
+    def put(self, **traits: Any) -> None:
+        """Change traits on the page, as the kernel would."""
+        self.page.evaluate("(now) => put(now)", {name: _frozen(value) for name, value in traits.items()})
 
-def sent(page: Any) -> list[Any]:
-    """Messages that the panel sent to the kernel."""
-    return list(page.evaluate("() => model.sent"))
+    def carry(self) -> list[dict[str, Any]]:
+        """Carry what the page said to the panel; returns it."""
+        said = list(self.page.evaluate("() => outbox.splice(0)"))
+        for item in said:
+            if "trait" in item:
+                setattr(self.panel, item["trait"], item["value"])
+            else:
+                self.panel._heard(self.panel, item["content"], [])
+        return said

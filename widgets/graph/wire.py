@@ -53,19 +53,25 @@ def _nodes(graph: Any) -> list[dict[str, Any]]:
             caution = graph.pathways[record.pathway].disputed if kind == "segment" else None
             nodes.append({"key": key, "kind": kind, "name": graph.name_of(key), "text": record.serves_in_words,
                           "y": points[:, 1].mean(), "z": points[:, 2].mean(), "caution": caution,
-                          "layer": graph.origin(kind, key).layer})  # fmt: skip
+                          "layer": _layer(graph, kind, key)})  # fmt: skip
     for kind, records, text in (("function", graph.functions, "description"), ("sign", graph.signs, "examination")):
         nodes += [{"key": key, "kind": kind, "name": record.name, "domain": record.domain,
-                   "text": getattr(record, text), "layer": graph.origin(kind, key).layer}
+                   "text": getattr(record, text), "layer": _layer(graph, kind, key)}
                   for key, record in records.items()]  # fmt: skip
     return nodes
+
+
+def _layer(graph: Any, kind: str, key: str) -> str:
+    """Name of the layer that a record came from; the lowest for one that was never in a file."""
+    origin = graph.origins.get((kind, key))
+    return str(origin.layer if origin is not None else graph.layers[0])
 
 
 def _claim(graph: Any, key: str) -> dict[str, Any]:
     claim = graph.claims[key]
     return {"key": key, "says": claim.says, "grade": claim.grade, "kind": claim.kind, "stance": claim.stance,
             "population": claim.population, "sources": list(claim.sources), "note": claim.note,
-            "layer": graph.origin("claim", key).layer}  # fmt: skip
+            "layer": _layer(graph, "claim", key)}  # fmt: skip
 
 
 def _citation(source: Any) -> str:
