@@ -167,9 +167,9 @@ def _check_known(keys: Iterable[str], kind: Kind, graph: Content, where: str, re
     known = graph.records(kind)
     for key in keys:
         if key not in known:
-            report.add(
-                "unknown-key", where, f"{kind} {key!r} is not there", remedy=nearest(key, known) or "check the key"
-            )
+            gone = graph.retired.get((kind, key))
+            remedy = f"{gone.origin.layer} retired it: {gone.reason}" if gone else nearest(key, known)
+            report.add("unknown-key", where, f"{kind} {key!r} is not there", remedy=remedy or "check the key")
 
 
 def _check_repeats(graph: Content, kind: Kind, key: str, what: str, words: Iterable[str], report: FaultReport) -> None:

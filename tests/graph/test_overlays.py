@@ -164,7 +164,10 @@ BAD = {
     "unknown kind": ("add: {sign: {}}", "did you mean signs"),
     "no reason": ("retire: {claims: {bow_exists: {}}}", "a retire without a reason"),
     "field of another kind": ("change: {claims: {bow_exists: {minutes: 3}}}", "field 'minutes' is not known here"),
-    "retired while in use": ("retire: {functions: {echo: {reason: x}}}", "function 'echo' is not there"),
+    "retired while in use": (
+        "retire: {functions: {echo: {reason: x}}}",
+        "function 'echo' is not there; Ward retired it: x",
+    ),
     "loads": (
         "change: {functions: {balance: {routes: {only: {name: W, usual_load: 0.4, chain: [worm]}}}}}",
         "usual loads sum to 0.4",
