@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 
 import numpy as np
+
 from byway.knowledge.space.geometry import Geometry
 from byway.knowledge.space.grid import TEMPLATE_GRID
 
@@ -74,7 +75,7 @@ def toy_geometry(n_pairs: int = 4, n_streamlines: int = 40, seed: int = 0, radiu
         segment_offsets=np.cumsum([0, *(len(b) for b in bundles)]),
         core=np.concatenate([np.asarray(c, bool) for c in cores]),
         streamline_weights=np.ones(len(lines), np.float32),
-        spread_mm=np.linspace(1.5, 4, n_elements).astype(np.float32),
+        spread_mm=np.repeat(np.linspace(1.5, 4, n_elements // 2), 2).astype(np.float32),
         anatomy=("template",) * n_elements,
         content_hash=hashlib.sha256(f"toy {n_pairs} {n_streamlines} {seed} {radius_mm}".encode()).hexdigest(),
     )

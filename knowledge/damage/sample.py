@@ -67,7 +67,7 @@ class Sample:
         step : int
             Take every so many points along a streamline, and always its last one.
         voxels : int, optional
-            Most voxels of a parcel, evenly spaced in their order; all where None.
+            Most voxels of a parcel, evenly spaced from the midline outwards; all where None.
         """
         n_regions = len(geometry.region_ids)
         elements: list[NDArray[np.int32]] = []
@@ -75,7 +75,8 @@ class Sample:
         chosen_voxels = []
         for region in range(n_regions):
             first, last = geometry.region_offsets[region], geometry.region_offsets[region + 1]
-            chosen = _evenly(int(first), int(last), voxels)
+            chosen = first + _outwards(geometry.region_voxels[first:last], geometry.grid.shape)
+            chosen = chosen[_evenly(0, len(chosen), voxels)]
             chosen_voxels.append(chosen)
             elements.append(np.full(len(chosen), region, np.int32))
             weights.append(_unit(geometry.region_weights[chosen]))
@@ -109,6 +110,12 @@ class Sample:
             partner=_partners(geometry),
             spread_mm=geometry.spread_mm,
         )
+
+
+def _outwards(flat: NDArray[np.int32], shape: tuple[int, int, int]) -> NDArray[np.int64]:
+    """Order of a parcel's voxels by distance from the midline plane, so that both sides' samples are mirror images."""
+    i, j, k = np.unravel_index(flat, shape)
+    return np.asarray(np.lexsort((k, j, np.abs(2 * i - (shape[0] - 1)))))
 
 
 def _movers(
