@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import json
 import os
 
 import subprocess
@@ -92,7 +91,7 @@ def explain_case(path: Path, *, as_json: bool, report: Path | None, draws: int) 
     case = open_case(path)
     explanation = explain(case, draws=draws)
     if as_json:
-        print(json.dumps(explanation.to_json(), indent=1, allow_nan=False))
+        print(explanation.to_json(indent=1))
     else:
         print(explanation_text(case, explanation))
     if report is not None:
