@@ -14,8 +14,11 @@ from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.overlays import ACTIONS, Action
 from byway.knowledge.lesion.lesion import Compartment, Lesion
 from byway.knowledge.lesion.shapes import ellipsoid_mask
+from byway.knowledge.reasoning.findings import GRADES, Finding
 
-__all__ = ["edit_wishes", "ellipsoids", "lesions", "plain_mappings", "small_masks", "texts"]
+__all__ = [
+    "damage_maps", "edit_wishes", "ellipsoids", "finding_lists", "lesions", "plain_mappings", "small_masks", "texts",
+]  # fmt: skip
 
 # Words that some readers of YAML take for switches, numbers, times, or marks.
 AWKWARD = ("no", "on", "null", "~", "", "12:30", "2026-12-01", "1e3", "0x1f", "1_000", ".5", "- a", "a: b", "#x", "<<")
@@ -83,3 +86,19 @@ def lesions(draw: st.DrawFn) -> Lesion:
 
 
 small_masks = hnp.arrays(bool, st.tuples(*[st.integers(1, 9)] * 3))
+
+
+@st.composite
+def damage_maps(draw: st.DrawFn, graph: Graph, most: int = 6) -> dict[str, float]:
+    """Damage above 0 of a few elements of a graph, by element id."""
+    elements = st.sampled_from(graph.all_element_ids)
+    return draw(st.dictionaries(elements, st.floats(0.0625, 1.0, width=32), min_size=1, max_size=most))
+
+
+@st.composite
+def finding_lists(draw: st.DrawFn, graph: Graph, most: int = 6) -> list[Finding]:
+    """Findings on different signs of a graph, of any grade, often contradictory."""
+    signs = draw(st.lists(st.sampled_from(graph.sign_ids()), unique=True, max_size=most))
+    grades = [draw(st.sampled_from(GRADES)) for _ in signs]
+    return [Finding(sign.rpartition("@")[0], sign.rpartition("@")[2], grade)  # type: ignore[arg-type]
+            for sign, grade in zip(signs, grades, strict=True)]  # fmt: skip

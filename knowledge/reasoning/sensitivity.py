@@ -16,10 +16,12 @@ from byway.knowledge.reasoning.posterior import Reckoning, reckon, without_findi
 from byway.knowledge.reasoning.scenarios import AXES, AxisPriors
 from byway.knowledge.reasoning.wording import join
 
-__all__ = ["EASILY", "Sensitivity", "sensitivity"]
+__all__ = ["EASILY", "NARROW_ODDS", "Sensitivity", "sensitivity"]
 
-EASILY = 0.2
+EASILY = 0.1
 """Share of the changes from which a ranking that turns over is said to turn over easily."""
+NARROW_ODDS = 1.5
+"""Odds of the first account against the second below which one change is enough to say so."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -31,17 +33,16 @@ class Sensitivity:
     table : DataFrame
         ``kind`` (prior, finding, mask), ``change`` in words, ``first`` (title of the account that then leads),
         ``p_first``, ``p_usual_first`` (posterior of the account that leads now), ``flips``.
+    flips_easily : bool
+        Whether at least a share :data:`EASILY` of the changes puts another account first, or one does while the first
+        leads the second by less than :data:`NARROW_ODDS`.
     words : str
         One sentence.
     """
 
     table: pd.DataFrame
+    flips_easily: bool
     words: str
-
-    @property
-    def flips_easily(self) -> bool:
-        """Whether a share of at least :data:`EASILY` of the changes puts another account first."""
-        return len(self.table) > 0 and float(self.table["flips"].mean()) >= EASILY
 
 
 def sensitivity(
@@ -75,7 +76,8 @@ def sensitivity(
         if progress is not None and progress(done + 1, len(changes)) is False:
             break
     table = pd.DataFrame(rows, columns=["kind", "change", "first", "p_first", "p_usual_first", "flips"])
-    return Sensitivity(table, _words(table, grouping))
+    easily = _easily(table, grouping)
+    return Sensitivity(table, easily, _words(table, easily))
 
 
 def _prior_changes(reckoning: Reckoning) -> list[tuple[str, str, Callable[[], Reckoning]]]:
@@ -125,13 +127,17 @@ def _scaled(priors: AxisPriors, axis: str, value: str, factor: float) -> AxisPri
     return {**priors, axis: scaled}
 
 
-def _words(table: pd.DataFrame, grouping: Grouping) -> str:
+def _easily(table: pd.DataFrame, grouping: Grouping) -> bool:
+    flips = int(table["flips"].sum())
+    narrow = len(grouping.groups) > 1 and grouping.posterior[0] < NARROW_ODDS * grouping.posterior[1]
+    return flips > 0 and (bool(narrow) or flips >= EASILY * len(table))
+
+
+def _words(table: pd.DataFrame, easily: bool) -> str:
     flips = table[table["flips"].astype(bool)]
-    lead = float(grouping.posterior[0] - grouping.posterior[1]) if len(grouping.groups) > 1 else 1.0
     if flips.empty:
         return f"The first account stays first under all {len(table)} changes."
     changes = join([str(change) for change in flips["change"].head(3)])
     more = f" and {len(flips) - 3} more" if len(flips) > 3 else ""
-    easily = len(flips) / len(table) >= EASILY or lead < 0.05
     start = "The ranking turns over easily" if easily else "The first account is mostly steady"
     return f"{start}: {len(flips)} of {len(table)} changes put another first ({changes}{more})."
