@@ -21,7 +21,7 @@ from byway.knowledge.space.template import template_hash
 
 __all__ = ["BUILD_VERSION", "build_geometry", "geometry_hash"]
 
-BUILD_VERSION = 2
+BUILD_VERSION = 3
 """Raised whenever the method changes, so that caches of older builds are not used."""
 
 _MIRROR = np.array([-1.0, 1.0, 1.0])
