@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 import pandas as pd
 
-from byway.knowledge.reasoning.explain import Explanation
+from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.posterior import log_mean
 from byway.knowledge.reasoning.wording import join
 

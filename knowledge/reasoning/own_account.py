@@ -10,7 +10,7 @@ import pandas as pd
 
 from byway.knowledge.faults import BywayError, Fault, nearest
 from byway.knowledge.reasoning.accounts import LIKELY, Account, FoundSign
-from byway.knowledge.reasoning.explain import Explanation
+from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.ledger import LEDGER_COLUMNS, ledgers
 from byway.knowledge.reasoning.posterior import SCENARIOS, SLIP, Reckoning, reckon
 from byway.knowledge.reasoning.scenarios import Scenario

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pandas as pd
 
-from byway.knowledge.reasoning.explain import Explanation
+from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.findings import GRADES
 
 __all__ = ["profile"]

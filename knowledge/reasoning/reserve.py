@@ -9,7 +9,7 @@ import pandas as pd
 
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.references import split_reference
-from byway.knowledge.reasoning.explain import Explanation
+from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.posterior import SCENARIOS
 from byway.knowledge.reasoning.rerouting import route_flows
 from byway.knowledge.reasoning.wording import join, share_words

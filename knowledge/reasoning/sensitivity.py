@@ -10,7 +10,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from byway.knowledge.reasoning.explain import Explanation
+from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.grouping import Grouping, regroup
 from byway.knowledge.reasoning.posterior import Reckoning, reckon, without_finding
 from byway.knowledge.reasoning.scenarios import AXES, AxisPriors

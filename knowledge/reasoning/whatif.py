@@ -10,10 +10,11 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from byway.knowledge.faults import BywayError, Fault, nearest
-from byway.knowledge.reasoning.explain import Explanation, function_table, sign_table
+from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.posterior import Reckoning, reckon
 from byway.knowledge.reasoning.prepared import Prepared
 from byway.knowledge.reasoning.scenarios import axis_priors, headroom_of
+from byway.knowledge.reasoning.tables import function_table, sign_table
 
 __all__ = ["Change", "WhatIf", "changed_draws", "what_if"]
 
