@@ -15,6 +15,7 @@ ROOMS = (
     "byway.knowledge.faults",
     "byway.knowledge.yamltext",
     "byway.knowledge.words",
+    "byway.knowledge.atomic",
     "byway.knowledge.curated",
     "byway.knowledge.graph",
     "byway.knowledge.space",

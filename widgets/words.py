@@ -14,6 +14,7 @@ from types import MappingProxyType
 from typing import NamedTuple
 
 import yaml
+
 from byway.knowledge.faults import BywayError, Fault, nearest
 
 __all__ = ["ORIGINS", "Word", "section", "word", "words"]

@@ -12,8 +12,8 @@ import jinja2
 import numpy as np
 from numpy.typing import NDArray
 
+from byway.knowledge.atomic import write_text
 from byway.knowledge.cases.atlas_pictures import INKS, course_views
-from byway.knowledge.cases.atomic import write_text
 from byway.knowledge.cases.desk import Desk
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.records import Claim, Pathway, Segment

@@ -9,7 +9,7 @@ from pathlib import Path
 
 import numpy as np
 
-from byway.knowledge.cases.atomic import fingerprint
+from byway.knowledge.atomic import fingerprint
 from byway.knowledge.cases.files import case_path, inside, read_case, write_case
 from byway.knowledge.cases.model import CaseFile, CompartmentSpec, ShapeSpec
 from byway.knowledge.faults import CaseError, Fault, nearest

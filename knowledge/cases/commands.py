@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import os
-
 import subprocess
 import sys
 import webbrowser
@@ -14,9 +13,9 @@ from pathlib import Path
 
 import pandas as pd
 
+from byway.knowledge.atomic import write_text
 from byway.knowledge.cases.archive import pack_case, unpack_case
 from byway.knowledge.cases.atlas import write_atlas
-from byway.knowledge.cases.atomic import write_text
 from byway.knowledge.cases.case import open_case
 from byway.knowledge.cases.desk import desk_for
 from byway.knowledge.cases.explaining import damage_of, explain

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 from pathlib import Path
 
-from byway.knowledge.cases.atomic import fingerprint
+from byway.knowledge.atomic import fingerprint
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.loading import load_graph

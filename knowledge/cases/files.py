@@ -7,7 +7,7 @@ from typing import Any
 
 import yaml
 
-from byway.knowledge.cases.atomic import fingerprint, write_text
+from byway.knowledge.atomic import fingerprint, write_text
 from byway.knowledge.cases.model import SCHEMA_VERSION, CaseFile
 from byway.knowledge.cases.pages import new_id
 from byway.knowledge.faults import CaseError, Fault

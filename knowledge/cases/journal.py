@@ -13,7 +13,7 @@ from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
-from byway.knowledge.cases.atomic import append_line
+from byway.knowledge.atomic import append_line
 from byway.knowledge.cases.pages import new_id, now
 
 __all__ = ["Journal", "read_journal"]

@@ -18,7 +18,7 @@ from typing import Annotated, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError
 
-from byway.knowledge.cases.atomic import write_text
+from byway.knowledge.atomic import write_text
 from byway.knowledge.faults import CaseError, Fault, FaultReport
 
 __all__ = ["Anchor", "Note", "OwnAccount", "Page", "Pages", "Resolution", "Standing", "new_id", "now", "thread"]

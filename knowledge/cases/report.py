@@ -15,7 +15,7 @@ import pandas as pd
 from markdown_it import MarkdownIt
 from nh3 import clean
 
-from byway.knowledge.cases.atomic import write_text
+from byway.knowledge.atomic import write_text
 from byway.knowledge.cases.case import Case
 from byway.knowledge.cases.pages import Note, Pages, thread
 from byway.knowledge.cases.pictures import slice_views

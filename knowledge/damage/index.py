@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -35,12 +36,9 @@ class DamageIndex:
         Row of each voxel of the grid (C order) in the ragged tables; -1 where nothing lies.
     voxel_of_row : (N,) int32
         The inverse of it.
-    streamlines : Rows
-        Streamlines that have a point in the voxel.
-    segments : Rows
-        Segments that have one, as element positions.
-    regions : Rows
-        Regions whose parcel holds the voxel, as element positions, with their membership weights.
+    members : Rows
+        What lies at the voxel of each row, by one number: ``r`` for region r, ``R + g`` for segment g, and
+        ``E + s`` for streamline s (R regions, E elements). Weights are memberships of parcels, and 1 for others.
 
     Notes
     -----
@@ -50,9 +48,7 @@ class DamageIndex:
     geometry: Geometry
     row_of_voxel: NDArray[np.int32] = field(repr=False)
     voxel_of_row: NDArray[np.int32] = field(repr=False)
-    streamlines: Rows = field(repr=False)
-    segments: Rows = field(repr=False)
-    regions: Rows = field(repr=False)
+    members: Rows = field(repr=False)
 
     @classmethod
     def build(cls, geometry: Geometry) -> DamageIndex:
@@ -64,8 +60,6 @@ class DamageIndex:
             A point is not finite. Points outside the grid are allowed: no lesion reaches them.
         """
         grid = geometry.grid
-        n_streamlines = len(geometry.streamline_offsets) - 1
-        n_regions, n_segments = len(geometry.region_ids), len(geometry.segment_ids)
         voxel, offsets = _visited_voxels(geometry)
         parcel_voxels = geometry.region_voxels.astype(np.int64)
         occupied = np.zeros(grid.size, bool)
@@ -75,28 +69,43 @@ class DamageIndex:
         row_of_voxel = np.full(grid.size, -1, np.int32)
         row_of_voxel[used] = np.arange(len(used), dtype=np.int32)
 
-        by_streamline = sparse.csr_matrix(
-            (np.ones(len(voxel), bool), row_of_voxel[voxel], offsets), shape=(n_streamlines, len(used))
-        )
-        # The same rows, cut at the segments' bounds instead of the streamlines'.
-        by_segment = sparse.csr_matrix(
-            (by_streamline.data, by_streamline.indices, offsets[geometry.segment_offsets]),
-            shape=(n_segments, len(used)),
-        )
-        segments = Rows.inverted(by_segment)
-        streamlines = Rows.inverted(by_streamline)
-        by_region = sparse.csr_matrix(
-            (geometry.region_weights, row_of_voxel[parcel_voxels], geometry.region_offsets),
-            shape=(n_regions, len(used)),
-        )
+        n_rows = len(used)
+        by_streamline = _table(row_of_voxel[voxel], offsets, n_rows)
+        # The same list, cut at the segments' bounds instead of the streamlines'.
+        by_segment = _table(row_of_voxel[voxel], offsets[geometry.segment_offsets], n_rows)
+        by_segment.sum_duplicates()
+        by_region = _table(row_of_voxel[parcel_voxels], geometry.region_offsets, n_rows)
+        weights = geometry.region_weights
+        hard = bool((weights == 1).all())
+        if not hard:
+            by_region.data = weights.astype(np.float32)
+            by_segment.data = np.ones(by_segment.nnz, np.float32)
+            by_streamline.data = np.ones(by_streamline.nnz, np.float32)
+        every = sparse.vstack([by_region, by_segment, by_streamline], format="csr")
         return cls(
             geometry=geometry,
             row_of_voxel=row_of_voxel,
             voxel_of_row=used.astype(np.int32),
-            streamlines=streamlines,
-            segments=segments.without_repeats(shift=n_regions),
-            regions=Rows.inverted(by_region, weighted=True),
+            members=Rows.inverted(every, weighted=not hard),
         )
+
+    @cached_property
+    def streamlines(self) -> Rows:
+        """Streamlines at the voxel of each row."""
+        chosen = self.members.chosen(self.members.members >= len(self.geometry.element_ids))
+        return Rows(chosen.offsets, chosen.members - np.int32(len(self.geometry.element_ids)))
+
+    @cached_property
+    def segments(self) -> Rows:
+        """Segments at the voxel of each row, as element positions."""
+        members = self.members.members
+        inside = (members >= len(self.geometry.region_ids)) & (members < len(self.geometry.element_ids))
+        return self.members.chosen(inside)
+
+    @cached_property
+    def regions(self) -> Rows:
+        """Regions at the voxel of each row, with their weights where parcels are graded."""
+        return self.members.chosen(self.members.members < len(self.geometry.region_ids))
 
     @cached_property
     def segment_of_streamline(self) -> NDArray[np.int32]:
@@ -135,9 +144,27 @@ class DamageIndex:
         return _sums(self.geometry.region_weights, self.geometry.region_offsets)
 
     @cached_property
-    def segment_weight(self) -> NDArray[np.float64]:
-        """Summed weight of each segment's streamlines."""
-        return _sums(self.geometry.streamline_weights, self.geometry.segment_offsets)
+    def streamline_share(self) -> NDArray[np.float64]:
+        """Weight of each streamline as a share of its segment's; 0 in a segment without weight."""
+        weights = self.geometry.streamline_weights
+        whole = _sums(weights, self.geometry.segment_offsets)[self.segment_of_streamline]
+        return np.asarray(np.divide(weights, whole, out=np.zeros(len(whole)), where=whole > 0))
+
+    def severed(self, cut: NDArray[Any]) -> NDArray[np.float64]:
+        """Severed share of each segment, given the largest D along every streamline."""
+        shares = np.zeros(len(self.geometry.segment_ids))
+        filled = np.diff(self.geometry.segment_offsets) > 0
+        if filled.any():
+            starts = self.geometry.segment_offsets[:-1][filled]
+            shares[filled] = np.add.reduceat(self.streamline_share * cut, starts)
+        return shares
+
+
+def _table(rows: NDArray[np.int32], offsets: NDArray[np.int64], n_rows: int) -> sparse.csr_matrix:
+    """Sparse matrix of (member, row) from the concatenated rows of all members."""
+    return sparse.csr_matrix(
+        (np.ones(len(rows), np.int8), rows, offsets.astype(np.int32)), shape=(len(offsets) - 1, n_rows)
+    )
 
 
 def _sums(values: NDArray[np.float32], offsets: NDArray[np.int64]) -> NDArray[np.float64]:

@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from byway.knowledge.damage.clearance import clearance_mm
 from byway.knowledge.damage.index import DamageIndex
-from byway.knowledge.damage.rows import gather_rows
+from byway.knowledge.damage.rows import gather_rows, stretches
 from byway.knowledge.damage.tables import damage_frame
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
@@ -119,40 +119,45 @@ def point_damage(lesion: Lesion | NDArray[np.floating], index: DamageIndex) -> D
     if len(effects) and not (effects.min() >= 0 and effects.max() <= 1):
         raise BywayError(Fault("effect-map", "lesion", f"effects from {effects.min():g} to {effects.max():g}",
                                "effects between 0 and 1"))  # fmt: skip
-    n_regions, n_elements = len(geometry.region_ids), len(geometry.element_ids)
-    voxel_ml = geometry.grid.voxel_ml
     rows = index.row_of_voxel[voxels]
-    rows, values = rows[rows >= 0], effects[rows >= 0]
-    share, overlap = np.zeros(n_elements, np.float32), np.zeros(n_elements, np.float32)
-
-    at, count = gather_rows(index.regions, rows)
-    region = index.regions.members[at]
-    weight = index.regions.weights[at] if index.regions.weights is not None else np.ones(len(at), np.float32)
-    lost = np.bincount(region, weight * np.repeat(values, count), minlength=n_regions)
-    share[:n_regions] = _ratio(lost, index.region_weight)
-    overlap[:n_regions] = np.bincount(region, weight, minlength=n_regions) * voxel_ml
-
-    at, _ = gather_rows(index.segments, rows)
-    overlap += np.bincount(index.segments.members[at], minlength=n_elements) * voxel_ml
-
-    cut = streamline_maxima(rows, values, index)
-    severed = np.bincount(
-        index.segment_of_streamline, geometry.streamline_weights * cut, minlength=len(geometry.segment_ids)
-    )
-    share[n_regions:] = _ratio(severed, index.segment_weight)
-    return Damage(index, voxels, effects, np.minimum(share, 1), overlap)
+    known = rows >= 0
+    rows, values = rows[known], effects[known]
+    uniform = len(values) > 0 and index.members.weights is None and values.min() == values.max()
+    sums, volumes, cut = _uniform(rows, values[0], index) if uniform else _graded(rows, values, index)
+    share = np.concatenate([_ratio(sums, index.region_weight), index.severed(cut)])
+    overlap = volumes[: len(geometry.element_ids)] * geometry.grid.voxel_ml
+    return Damage(index, voxels, effects, np.minimum(share, 1).astype(np.float32), overlap.astype(np.float32))
 
 
-def streamline_maxima(rows: NDArray[np.int32], values: NDArray[np.float32], index: DamageIndex) -> NDArray[np.float32]:
-    """The largest D along every streamline, given D at rows of the index."""
-    cut = np.zeros(len(index.geometry.streamline_weights), np.float32)
+_Sums = tuple[NDArray[Any], NDArray[Any], NDArray[Any]]
+
+
+def _uniform(rows: NDArray[np.int32], value: np.float32, index: DamageIndex) -> _Sums:
+    """As :func:`_graded` for one value of D and parcels without grades: counting is enough."""
+    n_regions, n_elements = len(index.geometry.region_ids), len(index.geometry.element_ids)
+    members = index.members.members[stretches(index.members.offsets, rows)]
+    counts = np.bincount(members, minlength=n_elements + len(index.geometry.core))
+    return counts[:n_regions] * np.float64(value), counts[:n_elements], (counts[n_elements:] > 0) * value
+
+
+def _graded(rows: NDArray[np.int32], values: NDArray[np.float32], index: DamageIndex) -> _Sums:
+    """Sums of D over each parcel, volumes of the lesion in each element (voxels), largest D along each streamline."""
+    n_regions, n_elements = len(index.geometry.region_ids), len(index.geometry.element_ids)
     if len(values) and values.min() != values.max():
         # Where several values land on one streamline the last one written stays, so the largest must come last.
         order = np.argsort(values, kind="stable")
         rows, values = rows[order], values[order]
-    at, count = gather_rows(index.streamlines, rows)
-    cut[index.streamlines.members[at]] = np.repeat(values, count)
-    return cut
+    at, count = gather_rows(index.members, rows)
+    members, effect = index.members.members[at], np.repeat(values, count)
+    weight = None if index.members.weights is None else index.members.weights[at]
+    largest = np.zeros(n_elements + len(index.geometry.core), np.float32)
+    largest[members] = effect
+    in_element = members < n_elements
+    members, effect = members[in_element], effect[in_element]
+    weight = None if weight is None else weight[in_element]
+    weighted = effect if weight is None else effect * weight
+    sums = np.bincount(members, weighted, minlength=n_elements)
+    return sums[:n_regions], np.bincount(members, weight, minlength=n_elements), largest[n_elements:]
 
 
 def _ratio(part: NDArray[Any], whole: NDArray[np.float64]) -> NDArray[np.float64]:

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy import sparse
 
-__all__ = ["Rows", "gather_rows", "gather_runs"]
+__all__ = ["Rows", "gather_rows", "gather_runs", "stretches"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -66,6 +66,26 @@ def gather_rows(rows: Rows, wanted: NDArray[np.integer]) -> tuple[NDArray[np.int
     ([8, 7, 9], [1, 2])
     """
     return gather_runs(rows.offsets, wanted)
+
+
+def stretches(offsets: NDArray[np.integer], rows: NDArray[np.integer]) -> NDArray[np.int64]:
+    """Positions of all members of ``rows`` (ascending), like :func:`gather_rows`, but row by row of neighbours.
+
+    A lesion's voxels follow one another in columns, and so do their rows: a whole column is one stretch of members.
+
+    Examples
+    --------
+    >>> stretches(np.array([0, 2, 3, 3, 6]), np.array([0, 1, 3])).tolist()
+    [0, 1, 2, 3, 4, 5]
+    """
+    if len(rows) == 0:
+        return np.empty(0, np.int64)
+    breaks = np.flatnonzero(np.diff(rows) != 1)
+    first = offsets[rows[np.append(0, breaks + 1)]].astype(np.int64)
+    count = offsets[rows[np.append(breaks, len(rows) - 1)] + 1] - first
+    ends = np.cumsum(count)
+    places: NDArray[np.int64] = np.arange(int(ends[-1])) + np.repeat(first - (ends - count), count)
+    return places
 
 
 def gather_runs(

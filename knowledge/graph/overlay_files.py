@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-import os
-import tempfile
 from collections.abc import Mapping
 from dataclasses import replace
 from pathlib import Path
 
+from byway.knowledge.atomic import write_bytes
 from byway.knowledge.faults import Fault, FaultReport, GraphError
 from byway.knowledge.graph.content import PLURALS
 from byway.knowledge.graph.emit import emit_yaml
@@ -98,18 +97,7 @@ def _write(path: Path, text: str) -> None:
     try:
         if path.is_file() and path.read_bytes() == data:
             return
-        path.parent.mkdir(parents=True, exist_ok=True)
-        handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.")
-        try:
-            with os.fdopen(handle, "wb") as file:
-                file.write(data)
-                file.flush()
-                os.fsync(file.fileno())
-            Path(temporary).chmod(0o644)
-            Path(temporary).replace(path)
-        except BaseException:
-            Path(temporary).unlink(missing_ok=True)
-            raise
+        write_bytes(path, data)
     except OSError as error:
         raise GraphError(
             Fault("unwritable", str(path), str(error.strerror), "a writable folder", "check it")

@@ -9,7 +9,6 @@ from __future__ import annotations
 import gzip
 import os
 import re
-import tempfile
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -19,6 +18,7 @@ import nibabel as nib
 import numpy as np
 from numpy.typing import NDArray
 
+from byway.knowledge.atomic import write_bytes
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.headers import OpenedImage, open_image, raw_voxels, refusal
 from byway.knowledge.lesion.lesion import Compartment, CompartmentKind, Lesion
@@ -211,15 +211,7 @@ def write_mask(
     image.header.set_xyzt_units("mm")
     image.set_sform(TEMPLATE_GRID.affine, "mni")
     image.set_qform(TEMPLATE_GRID.affine, "mni")
-    target.parent.mkdir(parents=True, exist_ok=True)
-    handle, scratch = tempfile.mkstemp(dir=target.parent, prefix=".", suffix=".part")
-    try:
-        with os.fdopen(handle, "wb") as stream, gzip.GzipFile("", "wb", 6, stream, mtime=0) as packed:
-            packed.write(image.to_bytes())
-        Path(scratch).replace(target)
-    except BaseException:
-        Path(scratch).unlink(missing_ok=True)
-        raise
+    write_bytes(target, gzip.compress(image.to_bytes(), 6, mtime=0))
     return target
 
 

@@ -17,7 +17,8 @@ _DARK = (
 _MODEL = """
 window.outbox = [];
 window.heard = {};
-const thaw = (v) => (v && v.$bytes !== undefined ? new DataView(Uint8Array.from(atob(v.$bytes), (c) => c.charCodeAt(0)).buffer) : v);
+const bytes = (text) => new DataView(Uint8Array.from(atob(text), (c) => c.charCodeAt(0)).buffer);
+const thaw = (v) => (v && v.$bytes !== undefined ? bytes(v.$bytes) : v);
 window.start = async (source, state) => {
   const traits = Object.fromEntries(Object.entries(state).map(([k, v]) => [k, thaw(v)]));
   let changed = new Set();
@@ -25,12 +26,18 @@ window.start = async (source, state) => {
   window.model = {
     get: (name) => traits[name],
     set: (name, value) => { traits[name] = value; changed.add(name); fire(`change:${name}`); },
-    save_changes: () => { for (const name of changed) outbox.push({ trait: name, value: traits[name] }); changed = new Set(); },
+    save_changes: () => {
+      for (const name of changed) outbox.push({ trait: name, value: traits[name] });
+      changed = new Set();
+    },
     send: (content) => outbox.push({ content }),
     on: (event, call) => { (heard[event] ||= new Set()).add(call); },
     off: (event, call) => { heard[event]?.delete(call); },
   };
-  window.put = (now) => { for (const [k, v] of Object.entries(now)) traits[k] = thaw(v); for (const k of Object.keys(now)) fire(`change:${k}`); };
+  window.put = (now) => {
+    for (const [name, value] of Object.entries(now)) traits[name] = thaw(value);
+    for (const name of Object.keys(now)) fire(`change:${name}`);
+  };
   const url = URL.createObjectURL(new Blob([source], { type: 'text/javascript' }));
   window.stop = await (await import(url)).default.render({ model, el: document.getElementById('here') });
 };

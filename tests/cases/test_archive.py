@@ -8,6 +8,7 @@ import zipfile
 from pathlib import Path
 
 import pytest
+
 from byway.knowledge.cases.archive import MANIFEST, pack_case, unpack_case
 from byway.knowledge.cases.pages import Note, Pages
 from byway.knowledge.faults import CaseError

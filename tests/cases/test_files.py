@@ -8,7 +8,8 @@ from pathlib import Path
 import jsonschema
 import pytest
 import yaml
-from byway.knowledge.cases.atomic import fingerprint
+
+from byway.knowledge.atomic import fingerprint
 from byway.knowledge.cases.files import dump_case, inside, read_case, write_case
 from byway.knowledge.cases.model import CaseFile, case_schema
 from byway.knowledge.faults import CaseError

@@ -10,6 +10,7 @@ import time
 from pathlib import Path
 
 import pytest
+
 from byway.knowledge.cases.journal import Journal, read_journal
 from byway.knowledge.cases.pages import Anchor, Note, OwnAccount, Pages, Resolution, Standing, new_id, thread
 from byway.knowledge.faults import CaseError

@@ -6,6 +6,7 @@ from pathlib import Path
 
 import nibabel as nib
 import numpy as np
+
 from byway.knowledge.cases.files import dump_case
 from byway.knowledge.cases.model import CaseFile
 from byway.knowledge.cases.pages import Note, Pages

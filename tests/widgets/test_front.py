@@ -7,6 +7,7 @@ import subprocess
 from pathlib import Path
 
 import pytest
+
 from byway.knowledge.faults import BywayError
 from byway.widgets import front
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import pytest
+
 from byway.knowledge.faults import BywayError
 from byway.widgets.words import ORIGINS, section, word, words
 

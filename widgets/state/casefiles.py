@@ -11,7 +11,7 @@ import nibabel as nib
 import numpy as np
 from numpy.typing import NDArray
 
-from byway.knowledge.cases.atomic import write_bytes
+from byway.knowledge.atomic import write_bytes
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.images import mask_name, read_labels, read_lesion, read_volume, write_mask
 from byway.knowledge.lesion.lesion import Lesion
