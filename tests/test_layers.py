@@ -33,6 +33,7 @@ ROOMS = (
     "byway.widgets.panel",
     "byway.widgets.slices",
     "byway.widgets.hits",
+    "byway.widgets.editing",
     "byway.widgets.findings",
     "byway.widgets.accounts",
     "byway.widgets.routes",
@@ -44,7 +45,7 @@ ROOMS = (
 )
 # The panels stand side by side: none may import another.
 PANELS = tuple(f"byway.widgets.{p}" for p in
-               ("slices", "hits", "findings", "accounts", "routes", "graph", "head", "notes"))  # fmt: skip
+               ("slices", "hits", "findings", "editing", "accounts", "routes", "graph", "head", "notes"))  # fmt: skip
 
 
 def module_name(path: Path) -> str:
