@@ -26,7 +26,9 @@ def _parser() -> argparse.ArgumentParser:
     parser.add_argument("--version", action="version", version=commands.version())
     rooms = parser.add_subparsers(dest="command", required=True, metavar="COMMAND")
 
-    def add(name: str, to: argparse._SubParsersAction[argparse.ArgumentParser] = rooms, key: str = "") -> argparse.ArgumentParser:
+    def add(
+        name: str, to: argparse._SubParsersAction[argparse.ArgumentParser] = rooms, key: str = ""
+    ) -> argparse.ArgumentParser:
         text = _help(key or name)
         return to.add_parser(name, help=text, description=text, epilog=_help("caution"))
 

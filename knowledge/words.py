@@ -39,7 +39,9 @@ def words() -> Mapping[str, Mapping[str, Word]]:
         If an entry has no text or an unknown origin.
     """
     loader = getattr(yaml, "CSafeLoader", yaml.SafeLoader)
-    raw = yaml.load(files("byway.knowledge").joinpath("words.yaml").read_text("utf-8"), loader)  # safe loader either way
+    raw = yaml.load(
+        files("byway.knowledge").joinpath("words.yaml").read_text("utf-8"), loader
+    )  # safe loader either way
     table = {}
     for name, entries in raw.items():
         for key, entry in entries.items():

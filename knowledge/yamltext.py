@@ -92,6 +92,7 @@ def read_yaml(path: Path, error: type[BywayError] = BywayError, name: str | None
 
 
 def _refuse_marks(loader: Any, text: str, name: str, error: type[BywayError]) -> None:
+    event: Any
     for event in yaml.parse(text, Loader=type(loader)):
         anchor = getattr(event, "anchor", None)
         tag = getattr(event, "tag", None)
@@ -102,7 +103,12 @@ def _refuse_marks(loader: Any, text: str, name: str, error: type[BywayError]) ->
 
 
 def _value(
-    loader: Any, node: Any, place: tuple[Any, ...], lines: dict[tuple[Any, ...], int], name: str, error: type[BywayError]
+    loader: Any,
+    node: Any,
+    place: tuple[Any, ...],
+    lines: dict[tuple[Any, ...], int],
+    name: str,
+    error: type[BywayError],
 ) -> Any:
     lines[place] = node.start_mark.line + 1
     if isinstance(node, yaml.MappingNode):

@@ -140,7 +140,9 @@ def test_bad_masks_get_one_clear_line(which: str, tmp_path: Path, capsys: pytest
         ("grade: bad", "case.yaml:9"),
     ],
 )
-def test_bad_cases_get_one_clear_line(change: str, said: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+def test_bad_cases_get_one_clear_line(
+    change: str, said: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
     """An unknown sign suggests the nearest; a wrong type names its line; the file is left as it is."""
     finding = {"sign": "repetition_deficit", "side": "none", "grade": "mild"}
     key, _, value = change.partition(": ")

@@ -121,7 +121,7 @@ class Case:
     def at_visit(self, position: int) -> Case:
         """The case as it stood at a later visit (from 0): its stage and findings, and its lesion if drawn anew."""
         visit = self.spec.visits[position]
-        changes = {"stage": visit.stage, "findings": visit.findings, "visits": ()}
+        changes: dict[str, object] = {"stage": visit.stage, "findings": visit.findings, "visits": ()}
         if visit.lesion is not None:
             changes["lesion"] = visit.lesion
         return Case(self.spec.model_copy(update=changes), self.folder)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from pathlib import Path
 
 import pandas as pd
@@ -16,8 +17,9 @@ from byway.knowledge.graph.graph import Graph
 from byway.knowledge.lesion.images import read_lesion
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.reasoning.explain import Explanation, explain_findings
+from byway.knowledge.reasoning.findings import Finding
 
-__all__ = ["damage_of", "desk_of", "element_names", "explain", "reckon_damage"]
+__all__ = ["damage_of", "desk_of", "element_names", "explain", "latest", "reckon_damage"]
 
 
 def element_names(graph: Graph) -> dict[str, str]:
@@ -45,7 +47,26 @@ def reckon_damage(
     return damage, many, table
 
 
-def damage_of(lesion: Lesion | str | Path, *, desk: Desk | None = None, draws: int = 200, seed: int = 0) -> pd.DataFrame:
+def latest(findings: Iterable[Finding]) -> tuple[Finding, ...]:
+    """The newest finding of each sign and side, in their order; an older one of the same sign is its history.
+
+    A finding without a date counts as older than any with one.
+
+    >>> [f.grade for f in latest([Finding("amnesia", "none", "severe", date="2026-11-03"),
+    ...                           Finding("amnesia", "none", "mild", date="2026-12-01")])]
+    ['mild']
+    """
+    newest: dict[str, Finding] = {}
+    for finding in findings:
+        old = newest.get(finding.sign_id)
+        if old is None or (finding.date or "") >= (old.date or ""):
+            newest[finding.sign_id] = finding
+    return tuple(newest.values())
+
+
+def damage_of(
+    lesion: Lesion | str | Path, *, desk: Desk | None = None, draws: int = 200, seed: int = 0
+) -> pd.DataFrame:
     """What a lesion reaches, most damaged first.
 
     Parameters
@@ -93,7 +114,7 @@ def explain(
         A volume of the case that cannot be used.
     """
     desk = desk or desk_of(case)
-    findings = case.findings(desk.graph)
+    findings = latest(case.findings(desk.graph))
     damage, many, table = reckon_damage(case.lesion, desk, draws=draws, seed=seed, progress=progress)
     return explain_findings(
         desk.graph,

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
@@ -15,8 +16,10 @@ from byway.knowledge.yamltext import Lined, read_yaml, validate
 
 __all__ = ["MIGRATIONS", "case_path", "dump_case", "inside", "read_case", "write_case"]
 
-# From schema version n to n + 1: a function of the plain mapping. Version 1 is the first.
-MIGRATIONS: dict[int, Any] = {}
+MIGRATIONS: dict[int, Callable[[dict[str, Any]], dict[str, Any]]] = {}
+"""From schema version n to n + 1: a function of the plain mapping. Version 1 is the first, so there is none yet.
+
+A case is migrated in memory when it is read; the file stays as it is until somebody saves."""
 
 
 def case_path(path: str | Path) -> Path:
@@ -31,9 +34,7 @@ def case_path(path: str | Path) -> Path:
     if given.is_dir():
         given = given / "case.yaml"
     if not given.is_file():
-        raise CaseError(
-            Fault("no-case", str(given), "no such file", "a case folder, or a case.yaml", "check the path")
-        )
+        raise CaseError(Fault("no-case", str(given), "no such file", "a case folder, or a case.yaml", "check the path"))
     return given
 
 
@@ -47,14 +48,20 @@ def read_case(path: Path) -> tuple[CaseFile, Lined]:
     """
     read = read_yaml(path, CaseError)
     if not isinstance(read.value, dict):
-        raise CaseError(Fault("type", read.where(()), "no mapping", "person, stage, lesion, findings", "see the README"))
+        raise CaseError(
+            Fault("type", read.where(()), "no mapping", "person, stage, lesion, findings", "see the README")
+        )
     version = read.value.get("schema_version", 1)
     if isinstance(version, int) and version > SCHEMA_VERSION:
         raise CaseError(Fault("version", read.where(("schema_version",)), f"schema {version}",
                               f"at most {SCHEMA_VERSION}", "open it with a newer byway"))  # fmt: skip
     value = read.value
-    while isinstance(version, int) and version in MIGRATIONS:
-        value = MIGRATIONS[version](value)
+    while isinstance(version, int) and not isinstance(version, bool) and version < SCHEMA_VERSION:
+        if version not in MIGRATIONS:
+            raise CaseError(Fault("version", read.where(("schema_version",)), f"schema {version}",
+                                  f"{min(MIGRATIONS, default=SCHEMA_VERSION)} to {SCHEMA_VERSION}",
+                                  "no way leads from there; the file is as it was"))  # fmt: skip
+        value = {**MIGRATIONS[version](value), "schema_version": version + 1}
         version += 1
     return validate(CaseFile, Lined(value, read.lines, read.name), CaseError), read
 

@@ -29,7 +29,9 @@ SCHEMA_VERSION = 1
 Point = tuple[float, float, float]
 Share = Annotated[float, Field(ge=0.0, le=1.0)]
 # YAML reads an unquoted 2026-11-03 as a date; people write it so.
-Day = Annotated[str, BeforeValidator(lambda v: v.isoformat() if isinstance(v, datetime.date) else v), Field(max_length=40)]
+Day = Annotated[
+    str, BeforeValidator(lambda v: v.isoformat() if isinstance(v, datetime.date) else v), Field(max_length=40)
+]
 Millimetre = Annotated[float, Field(ge=0.0, le=100.0)]
 
 

@@ -51,12 +51,18 @@ def encode_png(pixels: NDArray[np.uint8]) -> bytes:
 
     rows = np.concatenate([np.zeros((height, 1), np.uint8), pixels.reshape(height, width * 3)], axis=1)
     head = struct.pack(">IIBBBBB", width, height, 8, 2, 0, 0, 0)
-    return b"\x89PNG\r\n\x1a\n" + chunk(b"IHDR", head) + chunk(b"IDAT", zlib.compress(rows.tobytes(), 9)) + chunk(b"IEND", b"")
+    return (
+        b"\x89PNG\r\n\x1a\n"
+        + chunk(b"IHDR", head)
+        + chunk(b"IDAT", zlib.compress(rows.tobytes(), 9))
+        + chunk(b"IEND", b"")
+    )
 
 
 def _cut(volume: NDArray[np.generic], plane: Plane, index: int) -> NDArray[np.generic]:
     """A slice with rows from top to bottom and columns from the person's left (or back) to right (or front)."""
-    return np.take(volume, index, axis=AXIS[plane]).T[::-1]
+    cut: NDArray[np.generic] = np.take(volume, index, axis=AXIS[plane]).T[::-1]
+    return cut
 
 
 def _hatch(shape: tuple[int, ...], kind: str) -> NDArray[np.bool_]:
@@ -94,7 +100,9 @@ def slice_views(background: NDArray[np.floating], lesion: Lesion, extra: int = 2
         Further axial slices, spread over the height of the lesion.
     """
     where = np.argwhere(lesion.mask)
-    middle = np.rint(np.median(where, axis=0) if len(where) else TEMPLATE_GRID.to_voxel(np.zeros((1, 3)))[0]).astype(int)
+    middle = np.rint(np.median(where, axis=0) if len(where) else TEMPLATE_GRID.to_voxel(np.zeros((1, 3)))[0]).astype(
+        int
+    )
     cuts: list[tuple[Plane, int]] = [(plane, int(middle[AXIS[plane]])) for plane in ("axial", "coronal", "sagittal")]
     if len(where) and extra:
         heights = np.quantile(where[:, 2], np.linspace(0.1, 0.9, extra)).astype(int)

@@ -29,7 +29,9 @@ def test_round_trip(case: Path, tmp_path: Path) -> None:
     pack_case(case, tmp_path / "out.zip")
     unpack_case(tmp_path / "out.zip", tmp_path / "back")
     files = {p.relative_to(case): p.read_bytes() for p in case.rglob("*") if p.is_file()}
-    assert {p.relative_to(tmp_path / "back"): p.read_bytes() for p in (tmp_path / "back").rglob("*") if p.is_file()} == files
+    assert {
+        p.relative_to(tmp_path / "back"): p.read_bytes() for p in (tmp_path / "back").rglob("*") if p.is_file()
+    } == files
 
 
 def test_hidden_files_and_links_stay_behind(case: Path, tmp_path: Path) -> None:

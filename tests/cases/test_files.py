@@ -49,8 +49,14 @@ def test_vignettes_are_cases(vignette: dict, tmp_path: Path) -> None:
         ("- acute\n", r"case\.yaml:1: no mapping"),
         ("", r"case\.yaml:1: no mapping"),
         ("schema_version: 9\nstage: acute\n", r"case\.yaml:1 schema_version: schema 9; expected at most 1"),
-        ("stage: acute\nlesion:\n  compartments:\n  - {name: a, kind: core, effect: 2, file: a.nii}\n", r"yaml:4 .*effect"),
-        ("stage: acute\nlesion:\n  compartments:\n  - {name: a, kind: core, effect: 1}\n", r"either `file` or `shapes`"),
+        (
+            "stage: acute\nlesion:\n  compartments:\n  - {name: a, kind: core, effect: 2, file: a.nii}\n",
+            r"yaml:4 .*effect",
+        ),
+        (
+            "stage: acute\nlesion:\n  compartments:\n  - {name: a, kind: core, effect: 1}\n",
+            r"either `file` or `shapes`",
+        ),
     ],
 )
 def test_bad_cases_say_where(text: str, said: str, tmp_path: Path) -> None:
@@ -72,7 +78,7 @@ def test_a_change_by_somebody_else_is_kept(tmp_path: Path) -> None:
     with pytest.raises(CaseError, match="somebody wrote"):
         write_case(path, CaseFile(stage="subacute"), seen)
     assert path.read_text() == theirs
-    beside = [p for p in tmp_path.glob("case.*.yaml")]
+    beside = list(tmp_path.glob("case.*.yaml"))
     assert [read_case(p)[0].stage for p in beside] == ["subacute"]
     assert write_case(path, CaseFile(stage="subacute"), fingerprint(path)) == fingerprint(path)
 

@@ -105,7 +105,8 @@ def _write_until_killed(folder: str, acknowledged: str) -> None:
         account = OwnAccount(author="AB", title="y")
         pages.put(account)
         os.write(handle, f"account {account.id}\n".encode())
-        os.write(handle, f"stroke {journal.writer}/{journal.append({'kind': 'stroke', 'points': [1, 2, 3]})}\n".encode())
+        number = journal.append({"kind": "stroke", "points": [1, 2, 3]})
+        os.write(handle, f"stroke {journal.writer}/{number}\n".encode())
 
 
 def kill_and_read(folder: Path, times: int, seed: int = 0) -> int:
