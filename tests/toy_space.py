@@ -9,7 +9,7 @@ import numpy as np
 from byway.knowledge.space.geometry import Geometry
 from byway.knowledge.space.grid import TEMPLATE_GRID
 
-__all__ = ["toy_geometry"]
+__all__ = ["label_layers", "toy_geometry"]
 
 
 def _tube(rng, start, end, bend, n_streamlines, radius):
@@ -79,3 +79,20 @@ def toy_geometry(n_pairs: int = 4, n_streamlines: int = 40, seed: int = 0, radiu
         anatomy=("template",) * n_elements,
         content_hash=hashlib.sha256(f"toy {n_pairs} {n_streamlines} {seed} {radius_mm}".encode()).hexdigest(),
     )
+
+
+def label_layers(geometry: Geometry) -> list[tuple[np.ndarray, list[int]]]:
+    """Hard parcels as label volumes (region r has label r + 1), as few as keep overlapping parcels apart."""
+    layers: list[tuple[np.ndarray, list[int]]] = []
+    for region in range(len(geometry.region_ids)):
+        voxels = geometry.parcel_voxels(region)
+        for layer, held in layers:
+            if not layer[voxels].any():
+                layer[voxels] = region + 1
+                held.append(region)
+                break
+        else:
+            layer = np.zeros(geometry.grid.size, np.int32)
+            layer[voxels] = region + 1
+            layers.append((layer, [region]))
+    return [(layer.reshape(geometry.grid.shape), held) for layer, held in layers]

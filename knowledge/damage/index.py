@@ -153,11 +153,22 @@ class DamageIndex:
     def severed(self, cut: NDArray[Any]) -> NDArray[np.float64]:
         """Severed share of each segment, given the largest D along every streamline."""
         shares = np.zeros(len(self.geometry.segment_ids))
-        filled = np.diff(self.geometry.segment_offsets) > 0
-        if filled.any():
-            starts = self.geometry.segment_offsets[:-1][filled]
+        filled, starts = self._filled_segments
+        if len(starts):
             shares[filled] = np.add.reduceat(self.streamline_share * cut, starts)
         return shares
+
+    @cached_property
+    def _filled_segments(self) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+        """Segments that have streamlines, and the first of each."""
+        offsets = np.array(self.geometry.segment_offsets)
+        filled = np.flatnonzero(np.diff(offsets) > 0)
+        return filled, offsets[filled]
+
+    @cached_property
+    def voxel_ml(self) -> float:
+        """Volume of a voxel in ml."""
+        return self.geometry.grid.voxel_ml
 
 
 def _table(rows: NDArray[np.int32], offsets: NDArray[np.int64], n_rows: int) -> sparse.csr_matrix:

@@ -125,7 +125,7 @@ def point_damage(lesion: Lesion | NDArray[np.floating], index: DamageIndex) -> D
     uniform = len(values) > 0 and index.members.weights is None and values.min() == values.max()
     sums, volumes, cut = _uniform(rows, values[0], index) if uniform else _graded(rows, values, index)
     share = np.concatenate([_ratio(sums, index.region_weight), index.severed(cut)])
-    overlap = volumes[: len(geometry.element_ids)] * geometry.grid.voxel_ml
+    overlap = volumes[: len(geometry.element_ids)] * index.voxel_ml
     return Damage(index, voxels, effects, np.minimum(share, 1).astype(np.float32), overlap.astype(np.float32))
 
 

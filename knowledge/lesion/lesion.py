@@ -123,7 +123,7 @@ class Lesion:
     @cached_property
     def effect_voxels(self) -> tuple[NDArray[np.int64], NDArray[np.float32]]:
         """C-order indices of the voxels with D > 0, ascending, and D there: the effect map without its zeros."""
-        parts = [(np.flatnonzero(c.mask), np.float32(c.effect)) for c in self.compartments if c.effect > 0]
+        parts = [(_voxels_of(c.mask), np.float32(c.effect)) for c in self.compartments if c.effect > 0]
         if self.effect_volume is None and len(parts) == 1:
             voxels, effect = parts[0]
             return voxels, np.full(len(voxels), effect, np.float32)
@@ -174,3 +174,13 @@ class Lesion:
         for compartment in self.compartments:
             volumes[compartment.name] = volumes.get(compartment.name, 0.0) + compartment.volume_ml
         return volumes
+
+
+def _voxels_of(mask: NDArray[np.bool_]) -> NDArray[np.int64]:
+    """C-order indices of a mask's voxels; slices at both ends that hold none are passed over at once."""
+    used = np.flatnonzero(mask.reshape(len(mask), -1).any(axis=1))
+    if not len(used):
+        return np.empty(0, np.int64)
+    first = int(used[0])
+    voxels: NDArray[np.int64] = np.flatnonzero(mask[first : int(used[-1]) + 1]) + first * mask[0].size
+    return voxels

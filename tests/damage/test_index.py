@@ -7,6 +7,7 @@ import pytest
 from toy_space import toy_geometry
 
 from byway.knowledge.damage.index import DamageIndex
+from byway.knowledge.damage.point import point_damage
 from byway.knowledge.faults import BywayError
 from byway.knowledge.space.geometry import Geometry
 from byway.knowledge.space.grid import TEMPLATE_GRID
@@ -77,5 +78,7 @@ def test_empty_streamlines_and_parcels_are_allowed():
             anatomy=(*geometry.anatomy, "template", "template"),
         )
     )
-    assert index.segment_weight[-1] == 2
     assert index.region_weight[-1] == 0
+    damage = point_damage(np.ones(TEMPLATE_GRID.shape, np.float32), index)
+    assert damage.of("empty.part@left") == damage.of("nowhere@left") == 0
+    assert damage.of("tube.part_0@left") == 1

@@ -1,0 +1,152 @@
+"""How long damage takes, beside nilearn's masker and bare numpy gathers in the same run. Prints ratios; asserts none.
+
+Run alone for figures worth quoting: ``python -m pytest tests/benchmarks/test_damage_bench.py -s``.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+
+import nibabel as nib
+import numpy as np
+import pytest
+from nilearn.maskers import NiftiLabelsMasker, NiftiMapsMasker
+from toy_space import label_layers, toy_geometry
+
+from byway.knowledge.damage.ensemble import VARIANTS, EnsembleSettings, ensemble
+from byway.knowledge.damage.index import DamageIndex
+from byway.knowledge.damage.point import point_damage
+from byway.knowledge.damage.profile import course_profile
+from byway.knowledge.lesion.lesion import Lesion
+from byway.knowledge.lesion.shapes import sphere_mask
+from byway.knowledge.space.grid import TEMPLATE_GRID
+
+THIRTY_ML = 19.3  # radius in mm: 4/3 pi r^3 is 30.1 ml
+
+
+def lesion() -> Lesion:
+    """A fresh 30 ml lesion, so that nothing that is kept from an earlier call helps."""
+    return Lesion.from_mask(sphere_mask((-40, -10, 20), THIRTY_ML))
+
+
+def seconds(work: Callable[[], object], rounds: int = 5) -> float:
+    """Least time of some rounds."""
+    times = []
+    for _ in range(rounds):
+        start = time.perf_counter()
+        work()
+        times.append(time.perf_counter() - start)
+    return min(times)
+
+
+def note(benchmark, capsys, words: str, **ratios: float) -> None:
+    """Print ratios, and keep them with the benchmark."""
+    benchmark.extra_info.update(ratios)
+    with capsys.disabled():
+        print(f"\n{words}: " + ", ".join(f"{name} {value:.3g}" for name, value in ratios.items()))
+
+
+@pytest.fixture(scope="module")
+def index(template) -> DamageIndex:
+    """Index of the template."""
+    return DamageIndex.build(template.geometry)
+
+
+@pytest.mark.filterwarnings("ignore")
+def test_point_damage_beside_nilearns_masker(benchmark, capsys, index):
+    """Whole graph, 1 mm, 30 ml; the masker reckons the regions alone. The numbers agree to 1e-3."""
+    effect = nib.Nifti1Image(lesion().effect_map(), TEMPLATE_GRID.affine)
+    maskers = [
+        (NiftiLabelsMasker(nib.Nifti1Image(labels, TEMPLATE_GRID.affine), resampling_target=None).fit(), regions)
+        for labels, regions in label_layers(index.geometry)
+    ]
+    # Parcels overlap here and there; the least number of label volumes is more than one masker's work, so that only
+    # the first, which holds nearly all of them, is timed.
+    theirs = seconds(lambda: maskers[0][0].transform(effect), rounds=3)
+    drawn = [lesion() for _ in range(60)]
+    damage = benchmark.pedantic(lambda: point_damage(drawn.pop(), index), rounds=50, warmup_rounds=5)
+    for masker, regions in maskers:
+        np.testing.assert_allclose(damage.share[regions], np.ravel(masker.transform(effect)), atol=1e-3)
+    ours = benchmark.stats.stats.median
+    note(benchmark, capsys, "point damage, regions and segments, over nilearn's labels masker, regions alone",
+         ms=ours * 1e3, masker_ms=theirs * 1e3, masker_over_ours=theirs / ours)  # fmt: skip
+
+
+@pytest.mark.filterwarnings("ignore")
+def test_point_damage_beside_nilearns_maps_masker(benchmark, capsys, index):
+    """The segments' density maps, ten at a time as memory allows, scaled up to all: the whole graph by maskers."""
+    geometry = index.geometry
+    maps = np.zeros((*TEMPLATE_GRID.shape, 10), np.float32)
+    for i in range(10):
+        flat = TEMPLATE_GRID.flat_index(np.concatenate(geometry.streamlines(i * 7)))
+        maps[..., i].reshape(-1)[flat[flat >= 0]] = 1
+    masker = NiftiMapsMasker(nib.Nifti1Image(maps, TEMPLATE_GRID.affine), resampling_target=None).fit()
+    effect = nib.Nifti1Image(lesion().effect_map(), TEMPLATE_GRID.affine)
+    theirs = seconds(lambda: masker.transform(effect), rounds=1) * len(geometry.segment_ids) / 10
+    drawn = [lesion() for _ in range(60)]
+    benchmark.pedantic(lambda: point_damage(drawn.pop(), index), rounds=50, warmup_rounds=5)
+    ours = benchmark.stats.stats.median
+    note(benchmark, capsys, "point damage over nilearn's maps masker on all segments",
+         masker_s=theirs, masker_over_ours=theirs / ours)  # fmt: skip
+
+
+def test_clearance(benchmark, index):
+    """Signed distance to every element."""
+    drawn = [point_damage(lesion(), index) for _ in range(12)]
+    benchmark.pedantic(lambda: drawn.pop().clearance_mm, rounds=10, warmup_rounds=1)
+
+
+def test_ensemble_beside_the_bare_gather(benchmark, capsys, index):
+    """200 draws and four variants, beside gathering the effect map as often at the same points."""
+    settings = EnsembleSettings()
+    sample = index.sample
+    drawn = lesion()
+    effect = drawn.effect_map().reshape(-1)
+    reach = np.sqrt(sample.spread_mm.astype(float) ** 2 + 1.5)[:, None] * 2.5
+    element = np.repeat(sample.group_element, np.diff(sample.group_offsets))
+    lesion_voxels = np.argwhere(drawn.mask)
+    # Points that some draw could bring to the lesion or to the widest variant of it: all others are skipped by both.
+    low, high = lesion_voxels.min(axis=0) - settings.rim_mm - 2, lesion_voxels.max(axis=0) + settings.rim_mm + 2
+    near = ((sample.voxels >= low - reach[element]) & (sample.voxels <= high + reach[element])).all(axis=1)
+    at = np.ravel_multi_index(tuple(sample.voxels[near].T), TEMPLATE_GRID.shape, mode="clip").astype(np.int64)
+    out = np.empty(len(at), np.float32)
+
+    def gather() -> None:
+        for _ in range(settings.draws):
+            np.take(effect, at, out=out, mode="clip")
+
+    bare = seconds(gather, rounds=3)
+    benchmark.pedantic(lambda: ensemble(lesion(), index, settings), rounds=5, warmup_rounds=1)
+    ours = benchmark.stats.stats.median
+    note(
+        benchmark,
+        capsys,
+        f"ensemble of {settings.draws} at {len(at)} points",
+        ms=ours * 1e3,
+        over_one_gather=ours / bare,
+        over_a_gather_for_each_variant=ours / bare / len(VARIANTS),
+    )
+
+
+def test_cost_grows_no_faster_than_the_segments(benchmark, capsys):
+    """1,000 segments against 100, of 20 streamlines each, for one lesion."""
+    few, many = (DamageIndex.build(toy_geometry(pairs, 20)) for pairs in (50, 500))
+    drawn = [lesion() for _ in range(60)]
+    for each in drawn:
+        assert not each.is_empty
+    small = seconds(lambda: point_damage(drawn[0], few), rounds=20)
+    benchmark.pedantic(lambda: point_damage(drawn.pop(), many), rounds=20, warmup_rounds=2)
+    large = benchmark.stats.stats.min
+    note(benchmark, capsys, "1,000 segments over 100", times=large / small)
+
+
+def test_index_build(benchmark, template):
+    """Inverting the template's geometry."""
+    benchmark.pedantic(lambda: DamageIndex.build(template.geometry), rounds=3)
+
+
+def test_profile(benchmark, template):
+    """Along one course."""
+    drawn = lesion()
+    benchmark(lambda: course_profile(drawn, template, "arcuate_fasciculus.long_ventral", "left"))
