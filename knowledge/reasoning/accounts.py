@@ -19,7 +19,7 @@ from byway.knowledge.reasoning.remote import named_regions
 from byway.knowledge.reasoning.rerouting import route_flows
 from byway.knowledge.reasoning.scenarios import Scenario, setting_of
 from byway.knowledge.reasoning.sparing import Sparing, explain_sparing
-from byway.knowledge.reasoning.wording import DEPARTURE_WORDS, in_words, join, list_names
+from byway.knowledge.reasoning.wording import DEPARTURE_WORDS, in_words, join, list_names, route_name
 
 __all__ = ["LIKELY", "Account", "FoundSign", "build_account", "title_of"]
 
@@ -220,7 +220,8 @@ def _neck_table(reckoning: Reckoning, necks: list[Bottleneck]) -> pd.DataFrame:
         name = graph.functions[split_reference(neck.copy_id)[0]].name
         many = len(neck.network.routes) > 1
         flows = route_flows(neck.network, neck.damage, reckoning.headroom) if many else ()
-        carried = [flow.words for flow in flows if abs(flow.now - flow.usual) >= 0.03]
+        carried = [flow.words(route_name(graph, neck.network.function, flow.key)) for flow in flows
+                   if abs(flow.now - flow.usual) >= 0.03]  # fmt: skip
         held = list_names(graph, neck.elements, 4) or "the lowered load of its routes"
         words = f"{name} is held back by {held}{' together' if len(neck.elements) > 1 else ''}"
         if carried:

@@ -43,17 +43,16 @@ class RouteFlow:
     usual: float
     now: float
 
-    @property
-    def words(self) -> str:
-        """One clause for a card.
+    def words(self, name: str = "") -> str:
+        """One clause for a card, under the route's name in the graph (or its key).
 
-        >>> RouteFlow("indirect", (), 0.4, 0.55).words
-        'the indirect route carries 0.55 of the function (usually 0.40)'
+        >>> RouteFlow("indirect", (), 0.4, 0.55).words()
+        'indirect carries 0.55 of the function (usually 0.40)'
         """
-        name = "a detour" if self.key == "recombined" else f"the {self.key.replace('_', ' ')} route"
+        called = name or ("a detour" if self.key == "recombined" else self.key.replace("_", " "))
         if self.now < 0.005:
-            return f"{name} carries nothing (usually {self.usual:.2f})"
-        return f"{name} carries {self.now:.2f} of the function (usually {self.usual:.2f})"
+            return f"{called} carries nothing (usually {self.usual:.2f})"
+        return f"{called} carries {self.now:.2f} of the function (usually {self.usual:.2f})"
 
 
 def flow_graph(network: FunctionNetwork, damage: NDArray[np.floating], headroom: float) -> nx.DiGraph:

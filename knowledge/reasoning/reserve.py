@@ -12,7 +12,7 @@ from byway.knowledge.graph.references import split_reference
 from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.posterior import SCENARIOS
 from byway.knowledge.reasoning.rerouting import route_flows
-from byway.knowledge.reasoning.wording import join, share_words
+from byway.knowledge.reasoning.wording import join, route_name, share_words
 
 __all__ = ["NO_PROMISE", "asymmetry_words", "reserve"]
 
@@ -56,7 +56,7 @@ def reserve(explanation: Explanation, asymmetries: Mapping[str, float] | None = 
         network = tables[copy].cuts.network
         own = mean[tables[copy].rows]
         flows = route_flows(network, own, reckoning.headroom) if len(network.routes) > 1 else ()
-        spared = tuple(flow.words for flow in flows if flow.now >= 0.05)
+        spared = tuple(flow.words(route_name(graph, network.function, flow.key)) for flow in flows if flow.now >= 0.05)
         for element in function["limited_by"]:
             damage = float(mean[prepared.number[element]])
             if damage < _DAMAGED:

@@ -105,7 +105,7 @@ class SignModel:
 def loss(capacity: NDArray[np.floating], threshold: float) -> Array:
     """How far a function counts as lost at one threshold, in [0, 1]: 0 at capacity 1 and 1 at capacity 0.
 
-    >>> loss(np.array([0.0, 0.7, 1.0]), 0.7).round(2).tolist()
+    >>> [round(float(each), 2) for each in loss(np.array([0.0, 0.7, 1.0]), 0.7)]
     [1.0, 0.49, 0.0]
     """
     raw = 1.0 / (1.0 + np.exp((np.asarray(capacity, np.float32) - np.float32(threshold)) / np.float32(WIDTH)))

@@ -10,7 +10,7 @@ from byway.knowledge.reasoning.findings import Finding
 from byway.knowledge.reasoning.posterior import Reckoning
 from byway.knowledge.reasoning.rerouting import route_flows
 from byway.knowledge.reasoning.scenarios import Scenario, setting_of
-from byway.knowledge.reasoning.wording import join, list_names
+from byway.knowledge.reasoning.wording import join, list_names, route_name
 
 __all__ = ["Sparing", "explain_sparing"]
 
@@ -85,7 +85,8 @@ def _reasons(reckoning: Reckoning, scenario: Scenario, finding: Finding) -> dict
         kept = [flow for flow in flows if flow.now >= _KEEPS and not any(
             mean[network.elements.index(e)] >= _HIT for e in flow.elements)]  # fmt: skip
         if kept and len(flows) > 1:
-            reasons["spared_route"] = f"of {name}, {join([flow.words for flow in kept])}"
+            clauses = [flow.words(route_name(graph, network.function, flow.key)) for flow in kept]
+            reasons["spared_route"] = f"of {name}, {join(clauses)}"
         elif mean[worst] < 0.8:
             part = list_names(graph, [network.elements[worst]])
             reasons["partial_severing"] = f"{part} is only {mean[worst]:.0%} out of action"

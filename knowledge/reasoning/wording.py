@@ -8,7 +8,8 @@ from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.references import split_reference
 
 __all__ = [
-    "CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_a_sentence", "in_words", "join", "list_names", "share_words",
+    "CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_a_sentence", "in_words", "join", "list_names", "route_name",
+    "share_words",
 ]  # fmt: skip
 
 CAUTION = (
@@ -89,6 +90,13 @@ def list_names(graph: Graph, elements: Sequence[str], most: int = 3) -> str:
     parts = [("" if side == "midline" else f"{side} ") + join(names) for side, names in by_side.items()]
     more = len(elements) - len(shown)
     return join(parts) + (f" and {more} more" if more > 0 else "")
+
+
+def route_name(graph: Graph, function: str, key: str) -> str:
+    """Name of a route of a function within a sentence, with its side where it is written out on both."""
+    bare, side = split_reference(key)
+    name = next((route.name for route in graph.functions[function].routes if route.key == bare), "")
+    return f"{in_a_sentence(name)} ({side})" if name and side else in_a_sentence(name) if name else ""
 
 
 def share_words(share: float) -> str:

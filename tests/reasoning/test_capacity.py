@@ -138,7 +138,8 @@ def test_spared_route_takes_over_with_headroom() -> None:
     damage[net.elements.index("b")] = 1.0
     direct, indirect = route_flows(net, damage, 0.35)
     assert (direct.now, indirect.now) == (pytest.approx(0.0), pytest.approx(0.54, abs=1e-4))
-    assert indirect.words == "the b route carries 0.54 of the function (usually 0.40)"
+    assert indirect.words("The other way") == "The other way carries 0.54 of the function (usually 0.40)"
+    assert indirect.words() == "b carries 0.54 of the function (usually 0.40)"
 
 
 def test_undamaged_routes_carry_their_usual_loads() -> None:
