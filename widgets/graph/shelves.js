@@ -3,7 +3,7 @@ import { h, keep, mark, s, say } from "../front/kit.js";
 
 const SHELVES = ["region", "segment", "function", "sign"];
 
-/** The nodes within one step of a node (two through a function), with the edges among them that pass a filter. */
+/** The nodes within one step of a node (two through a function), and the edges among them that pass a filter. */
 export function neighbourhood(graph, centre, passes) {
   const near = new Set([centre]);
   const edges = [];
@@ -12,11 +12,12 @@ export function neighbourhood(graph, centre, passes) {
     near.add(edge.a === centre ? edge.b : edge.a);
   }
   const kind = graph.nodes.get(centre).kind;
-  if (kind === "function" || kind === "sign") {
-    // what serves a function is worth seeing joined up; what a sign rests on is worth seeing down to its elements
-    for (const one of kind === "sign" ? [...near] : []) {
-      if (graph.nodes.get(one).kind !== "function") continue;
-      for (const edge of graph.edgesOf.get(one) || []) if (passes(edge) && edge.relation === "serves") near.add(edge.a);
+  // A sign is seen down to the elements behind its functions; an element up to the signs of what it serves.
+  const beyond = { sign: "serves", region: "shows_as", segment: "shows_as" }[kind];
+  for (const one of beyond ? [...near] : []) {
+    if (graph.nodes.get(one).kind !== "function") continue;
+    for (const edge of graph.edgesOf.get(one) || []) {
+      if (edge.relation === beyond && passes(edge)) near.add(edge.a === one ? edge.b : edge.a);
     }
   }
   const seen = new Set();

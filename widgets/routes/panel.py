@@ -49,8 +49,17 @@ class RoutesPanel(Panel):
             if self.account >= len(self.accounts):
                 self.account = -1
             if self.chosen not in {choice["id"] for choice in self.choices}:
-                self.chosen = self.choices[0]["id"] if self.choices else ""
+                self.chosen = self._first_choice()
             self.show_network()
+
+    def _first_choice(self) -> str:
+        """What the leading account names first as held back; else whatever is held back most."""
+        offered = [choice["id"] for choice in self.choices]
+        for account in self.state.explanation.accounts[:1] if self.state.explanation is not None else ():
+            named = [copy for copy in account.bottlenecks["function"] if copy in offered]
+            if named:
+                return str(named[0])
+        return offered[0] if offered else ""
 
     def show_network(self) -> None:
         """The chosen function's network."""
@@ -60,7 +69,8 @@ class RoutesPanel(Panel):
                 self.net = {}
             else:
                 self._check()
-                self.net = network_of(explanation, graph, self.chosen, self.account if self.account >= 0 else None)
+                account = self.account if self.account >= 0 else None
+                self.net = network_of(explanation, graph, self.chosen, account, recombined=self.words["recombined"])
             self.stamp += 1
 
     def _check(self) -> None:

@@ -32,7 +32,9 @@ def choices_of(explanation: Any, words: dict[str, str]) -> list[dict[str, Any]]:
     return rows
 
 
-def network_of(explanation: Any, graph: Any, copy: str, account: int | None = None) -> dict[str, Any]:
+def network_of(
+    explanation: Any, graph: Any, copy: str, account: int | None = None, *, recombined: str = "recombined"
+) -> dict[str, Any]:
     """The network of a function copy with what its routes usually carry and carry now.
 
     Parameters
@@ -43,6 +45,8 @@ def network_of(explanation: Any, graph: Any, copy: str, account: int | None = No
         Function copy id.
     account : int, optional
         Rank of the account whose scenario is meant; as drawn with typical organisation where None.
+    recombined : str
+        What to call a path that takes pieces of several routes.
 
     Returns
     -------
@@ -65,7 +69,7 @@ def network_of(explanation: Any, graph: Any, copy: str, account: int | None = No
         if not flow.elements:
             continue
         key, side = split_reference(flow.key)
-        name = names.get(key, key) + (f", {side}" if side else "")
+        name = names.get(key, recombined) + (f", {side}" if side else "")
         routes.append({"key": flow.key, "name": name, "usual": flow.usual, "now": flow.now,
                        "path": [number[element] for element in flow.elements]})  # fmt: skip
     nodes = [
