@@ -84,46 +84,40 @@ class Anatomies:
         half = (self.draws + 1) // 2
         rng = np.random.default_rng(self.seed)
         nodes = tuple(int(np.ceil(n / _NODE)) + 3 for n in shape)
-        field = rng.standard_normal((half, int(np.prod(nodes)), 3), np.float32)
-        own = rng.standard_normal((half, len(partner), 3), np.float32)
-        shift = rng.standard_normal((half, 3), np.float32) * np.float32(self.jitter_mm)
-        turn = rng.standard_normal((half, 3), np.float32) * np.float32(np.deg2rad(self.jitter_deg))
+        field = rng.standard_normal((3, int(np.prod(nodes)), half), np.float32)
+        own = rng.standard_normal((3, len(partner), half), np.float32)
+        shift = rng.standard_normal((3, half), np.float32) * np.float32(self.jitter_mm)
+        turn = rng.standard_normal((3, half), np.float32) * np.float32(np.deg2rad(self.jitter_deg))
         middle = (np.array(shape) - 1) / 2.0
-        flip = np.array([-1.0, 1.0, 1.0], np.float32)
 
         limit = self.reach(spread).astype(np.float32)[:, None]
         size = (np.sqrt(0.5) * np.asarray(spread, float)).astype(np.float32)[:, None]
-        out = np.empty((self.draws, len(centre), 3), np.int16)
+        # Draws run fastest in memory, so that every step below is one pass over a plain block.
+        out = np.empty((3, len(centre), self.draws), np.int16)
         for mirrored in range(2):
             count = half if mirrored == 0 else self.draws - half
-            sign = flip if mirrored else np.float32(1)
-            at = (centre - middle) * sign
+            at = ((centre - middle) * ([-1, 1, 1] if mirrored else [1, 1, 1])).astype(np.float32)
             whose = partner[element] if mirrored else element
             weight = _interpolation(at, nodes)
-            shared = (weight @ field[:count].transpose(1, 0, 2).reshape(len(field[0]), -1)).reshape(len(at), count, 3)
-            shared = shared.transpose(1, 0, 2)
-            move = own[:count, whose]
-            move += shared
-            move *= size
-            move += shift[:count, None]
-            move += (turn[:count] @ _turned(at)).reshape(count, len(centre), 3)
-            move *= sign
-            np.rint(move, out=move)
-            out[half * mirrored : half * mirrored + count] = np.clip(move, -limit, limit, out=move)
-        return out
+            for axis in range(3):
+                move = weight @ field[axis]
+                move += own[axis][whose]
+                move *= size
+                move += shift[axis]
+                # A small turn w takes a place r to r + w x r.
+                after, before = (axis + 1) % 3, (axis + 2) % 3
+                move += np.stack([at[:, before], -at[:, after]], axis=1) @ turn[[after, before]]
+                np.rint(move, out=move)
+                np.clip(move, -limit, limit, out=move)
+                if mirrored and axis == 0:
+                    np.negative(move, out=move)
+                out[axis, :, half * mirrored : half * mirrored + count] = move[:, :count]
+        return out.transpose(2, 1, 0)
 
     def reach(self, spread: NDArray[np.floating]) -> NDArray[np.float64]:
         """Longest displacement along an axis, voxels, that is possible for a spread (voxels); longer ones are cut."""
         rigid = self.jitter_mm**2 + (np.deg2rad(self.jitter_deg) * 70) ** 2
         return np.asarray(np.ceil(_CAP * np.sqrt(np.asarray(spread, float) ** 2 + rigid)), float)
-
-
-def _turned(at: NDArray[np.floating]) -> NDArray[np.float32]:
-    """Matrix (3, 3 C) that takes a small rotation vector w to the displacements w x at of C places, in turn."""
-    x, y, z = at.T
-    none = np.zeros(len(at))
-    rows = [np.stack(parts, axis=1) for parts in ((none, -z, y), (z, none, -x), (-y, x, none))]
-    return np.stack([row.ravel() for row in rows]).astype(np.float32)
 
 
 def _interpolation(at: NDArray[np.floating], nodes: tuple[int, ...]) -> sparse.csr_matrix:

@@ -226,6 +226,9 @@ class _Near:
         group = np.searchsorted(sample.group_offsets, kept, side="right") - 1
         self.group_starts = np.flatnonzero(np.diff(group, prepend=-1))
         groups = group[self.group_starts]
+        sizes = np.diff(self.group_starts, append=len(group))
+        # The voxels of parcels come first; each is a group of its own, and needs no OR.
+        self.alone = int(np.argmax(sizes != 1)) if (sizes != 1).any() else len(sizes)
         self.group_weight = sample.group_weight[groups]
         element = sample.group_element[groups]
         self.element_starts = np.flatnonzero(np.diff(element, prepend=-1))
@@ -253,8 +256,9 @@ class _Near:
         draws = anatomies.draws
         move = anatomies.displacements(
             self.mover_centre, self.mover_element, self.mover_spread, sample.partner, sample.shape
-        ).astype(np.int64)
-        offset = (move[..., 0] * self.shape[1] + move[..., 1]) * self.shape[2] + move[..., 2]
+        )
+        along_x, along_y, along_z = move.T.astype(np.int64)
+        offset = np.ascontiguousarray(((along_x * self.shape[1] + along_y) * self.shape[2] + along_z).T)
         met = np.zeros((draws, len(self.group_starts)), words.volumes[0].dtype)
         at = np.empty(len(self.base), np.int64)
         found = np.empty(len(self.base), met.dtype)
@@ -267,7 +271,10 @@ class _Near:
                     np.take(offset[draw], self.mover, out=at, mode="clip")
                     at += self.base
                     np.take(flat, at, out=found, mode="clip")
-                    np.bitwise_or.reduceat(found, self.group_starts, out=met[draw])
+                    met[draw, : self.alone] = found[: self.alone]
+                    if self.alone < len(self.group_starts):
+                        together = self.group_starts[self.alone :] - self.alone
+                        np.bitwise_or.reduceat(found[self.alone :], together, out=met[draw, self.alone :])
                 done += 1
                 report = progress is not None and (done % _REPORT_EVERY == 0 or done == draws)
                 if report and progress is not None and progress(done, draws) is False:
