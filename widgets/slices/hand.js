@@ -113,9 +113,11 @@ export class Hand {
     const { drag } = this;
     if (!drag) return;
     if (drag.kind === "tool") {
+      const { store } = this.view;
+      const before = store.sentEdits;
       if (lost && this.tool.cancel) this.tool.cancel();
       else if (this.tool.up) this.tool.up();
-      this.view.store.send("hand", { down: false });
+      if (store.sentEdits === before) store.send("hand", { down: false }); // an edit says as much
     }
     if (drag.kind !== "pinch" || this.fingers.size === 0) this.drag = null;
     this.view.staleTops();

@@ -133,6 +133,7 @@ class SlicesPanel(Panel):
 
     def _on_edit(self, message: dict[str, Any], _: list[Any]) -> None:
         origin = message.get("origin", {})
+        self.state.hand(False)
         try:
             change = self.state.edit(message["edit"], origin)
         except Exception:

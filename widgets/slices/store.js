@@ -12,6 +12,7 @@ export class Store {
     this.id = Math.random().toString(36).slice(2, 10);
     this.newest = 0; // running number of our newest change
     this.answered = 0;
+    this.sentEdits = 0;
     this.revision = null;
     this.grid = null;
     this.volumes = new Map();
@@ -70,6 +71,7 @@ export class Store {
   /** Sends a change made here and returns its number. */
   edit(edit, number) {
     const n = number || ++this.newest;
+    this.sentEdits += 1;
     this.send("edit", { edit, origin: { view: this.id, n } });
     this.tell("sent", n);
     return n;

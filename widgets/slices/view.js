@@ -1,8 +1,9 @@
 // The slices panel: one store a model, one view a cell.
 import { frame, freshId, h, mark, say } from "../front/kit.js";
+import { WithActions } from "./actions.js";
 import { backgrounds } from "./backgrounds.js";
 import { commandButton, optionsRow, rail } from "./controls.js";
-import { commandFor, commandsOf } from "./commands.js";
+import { commandsOf } from "./commands.js";
 import { PLANES } from "./geometry.js";
 import { Hand } from "./hand.js";
 import { helpSheet } from "./help.js";
@@ -13,12 +14,12 @@ import { LookState } from "./look.js";
 import { overlays } from "./overlays.js";
 import { Film } from "./plane.js";
 import { Projection } from "./projection.js";
-import { inPlaneAxes } from "./raster.js";
 import { readout } from "./readout.js";
 import { Store } from "./store.js";
 
-class View {
+class View extends WithActions {
   constructor(model, store, el) {
+    super();
     this.model = model;
     this.store = store;
     this.words = model.get("words");
@@ -204,202 +205,6 @@ class View {
   noticeFromModel() {
     const notice = this.model.get("notice");
     if (notice) this.announce(notice);
-  }
-
-  // -- crosshair ----------------------------------------------------------------------------------------------------
-
-  voxelAt({ film, a, b }) {
-    return this.store.grid.at(film.plane, film.index, a, b);
-  }
-
-  moveCursor(plane, index, a, b) {
-    this.setCursor(this.store.grid.at(plane, index, a, b));
-  }
-
-  setCursor(voxel) {
-    this.showCursor(this.store.grid.clamp(voxel));
-    this.model.set("cursor_mm", this.store.grid.toMm(this.cursor));
-    clearTimeout(this.saving);
-    this.saving = setTimeout(() => this.model.save_changes(), 60);
-  }
-
-  showCursor(voxel) {
-    const before = this.cursor;
-    this.cursor = voxel;
-    for (const film of this.films) film.stale(before[film.plane] === voxel[film.plane]);
-    this.projection.later();
-    this.needsReadout = true;
-  }
-
-  cursorFromModel() {
-    if (this.store.grid) this.showCursor(this.store.grid.clamp(this.store.grid.toVoxel(this.model.get("cursor_mm"))));
-  }
-
-  stepSlice(plane, by) {
-    const voxel = [...this.cursor];
-    voxel[plane === null ? this.activeFilm.plane : plane] += by;
-    this.setCursor(voxel);
-  }
-
-  /** Moves along the axes of the active film, as seen on the screen. */
-  nudge(axis, by) {
-    const film = this.activeFilm;
-    const along = inPlaneAxes(film.plane)[axis];
-    const step = axis === 0 ? by * film.sight.flip : by;
-    if (this.look.tool === "move") {
-      this.hand.tool.nudge(along, step);
-      return;
-    }
-    const voxel = [...this.cursor];
-    voxel[along] += step;
-    this.setCursor(voxel);
-    this.sayWhere();
-  }
-
-  sayWhere() {
-    clearTimeout(this.saying);
-    this.saying = setTimeout(() => say(this.live, this.readout.textContent), 500);
-  }
-
-  hover() {
-    this.needsReadout = true;
-    this.requestDraw();
-  }
-
-  get activeFilm() {
-    return this.films.find((film) => film.node.contains(document.activeElement))
-      || this.films.find((film) => film.plane === this.look.focus);
-  }
-
-  zoom(factor) {
-    const film = this.activeFilm;
-    film.sight.zoomAt(...film.sight.toScreen(...this.store.grid.on(film.plane, this.cursor)), factor);
-    film.stale();
-  }
-
-  fitAll() {
-    for (const film of this.films) {
-      film.sight.reset();
-      film.resize();
-    }
-  }
-
-  /** Puts the crosshair in the middle of what is drawn. */
-  goToLesion() {
-    const box = this.hand.tools.move.extent();
-    if (box) this.setCursor(box.centre);
-    else this.announce(this.words.nothing_drawn);
-  }
-
-  // -- commands -----------------------------------------------------------------------------------------------------
-
-  command(edit) {
-    this.store.edit(edit);
-  }
-
-  takeTool(tool) {
-    this.hand.cancel();
-    this.look.set({ tool });
-    say(this.live, this.words[`tool_${tool}`]);
-  }
-
-  actAtCursor() {
-    const film = this.activeFilm;
-    const [a, b] = this.store.grid.on(film.plane, this.cursor);
-    const [x, y] = film.sight.toScreen(a, b);
-    if (this.hand.tool.act) this.hand.tool.act(film, { a, b, x, y });
-    this.staleTops();
-  }
-
-  finish() {
-    if (this.hand.tool.close) this.hand.tool.close();
-    this.staleTops();
-  }
-
-  resize(mm) {
-    this.command({ op: "resize", mm, compartment: this.look.compartment });
-  }
-
-  fillBetween() {
-    this.command({ op: "fill_between", plane: this.activeFilm.plane, compartment: this.look.compartment });
-  }
-
-  addCompartment() {
-    const n = this.store.styles.length;
-    this.command({ op: "add_compartment", name: `${this.words.kind_other} ${n + 1}`, kind: "other", effect: 0.5 });
-    this.look.set({ compartment: n });
-  }
-
-  removeCompartment(n) {
-    this.look.compartment = Math.max(0, this.look.compartment - (this.look.compartment >= n ? 1 : 0));
-    this.command({ op: "remove_compartment", compartment: n });
-  }
-
-  nextScan() {
-    const keys = this.store.scans.map((s) => s.key);
-    this.look.set({ scan: keys[(keys.indexOf(this.look.scan) + 1) % keys.length] });
-  }
-
-  setRadiological(on) {
-    this.model.set("radiological", on);
-    this.model.save_changes();
-    this.refit();
-    this.announce(this.words[on ? "radiological_on" : "neurological_on"]);
-  }
-
-  /** Tells all panels that an element was picked; this one outlines it. */
-  pickElement(id) {
-    this.model.set("selected", id);
-    this.model.save_changes();
-    this.outline(id, true);
-  }
-
-  /** Outlines an element; a passing outline makes room for the next one. */
-  outline(id, passing) {
-    const position = this.store.elements ? this.store.elements.ids.indexOf(id) : -1;
-    const kept = this.look.shown.filter((s) => !s.passing);
-    if (position < 0 || kept.some((s) => s.position === position)) return;
-    this.look.set({ shown: [...kept, { position, fill: passing, segment: id.includes("."), passing }] });
-  }
-
-  selectedFromModel() {
-    const id = this.model.get("selected");
-    if (id) this.outline(id, true);
-    else if (this.look.shown.some((s) => s.passing)) this.look.set({ shown: this.look.shown.filter((s) => !s.passing) });
-  }
-
-  toggleHelp() {
-    this.help.hidden = !this.help.hidden;
-    if (!this.help.hidden) this.help.focus();
-    else this.activeFilm.node.focus();
-  }
-
-  key(event) {
-    event.stopPropagation(); // notebooks bind plain letters
-    const typing = event.target.closest("input:not([type=range]):not([type=checkbox]), select, textarea");
-    if (!this.help.hidden && event.key === "Escape") {
-      this.toggleHelp();
-      return;
-    }
-    if (typing || (event.target.closest("button, summary, input") && ["Enter", " "].includes(event.key))) return;
-    if (event.target.closest("input[type=range], [role=radiogroup]") && event.key.startsWith("Arrow")) return;
-    if (event.key === " ") {
-      this.spaceDown = true;
-      event.preventDefault();
-      return;
-    }
-    const found = commandFor(this.commands, event);
-    if (!found) return;
-    event.preventDefault();
-    found[0].run(found[1]);
-  }
-
-  /** Whether a wheel event belongs to a scroll of the page that began outside the films. */
-  scrollingPast(event) {
-    const before = this.lastWheel && this.lastWheel.before;
-    const passing = before && !before.over && event.timeStamp - before.at < 250;
-    if (passing) this.lastWheel.over = false;
-    return Boolean(passing);
   }
 }
 
