@@ -18,7 +18,7 @@ from byway.knowledge.graph.records import (
     Source,
 )
 
-__all__ = ["NORMS", "toy_draws", "toy_graph"]
+__all__ = ["FUNCTIONS", "NORMS", "toy_draws", "toy_graph"]
 
 NORMS: dict[str, float | dict[str, float]] = {
     "language_dominance_right": {"right": 0.04, "ambidextrous": 0.15, "left": 0.27, "unknown": 0.065},

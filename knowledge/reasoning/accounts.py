@@ -26,6 +26,7 @@ __all__ = ["LIKELY", "Account", "FoundSign", "build_account", "title_of"]
 LIKELY = 0.5
 """P(sign) from which an account is said to explain a finding, or to predict a sign that was not found."""
 
+_MOVED = 0.05  # change of what a route carries from which a card says so
 _WEIGHTY = 0.05  # share of the explained loss from which an element may stand in the title
 
 
@@ -220,8 +221,9 @@ def _neck_table(reckoning: Reckoning, necks: list[Bottleneck]) -> pd.DataFrame:
         name = graph.functions[split_reference(neck.copy_id)[0]].name
         many = len(neck.network.routes) > 1
         flows = route_flows(neck.network, neck.damage, reckoning.headroom) if many else ()
-        carried = [flow.words(route_name(graph, neck.network.function, flow.key)) for flow in flows
-                   if abs(flow.now - flow.usual) >= 0.03]  # fmt: skip
+        moved = sorted((flow for flow in flows if abs(flow.now - flow.usual) >= _MOVED),
+                       key=lambda flow: -abs(flow.now - flow.usual))  # fmt: skip
+        carried = [flow.words(route_name(graph, neck.network.function, flow.key)) for flow in moved[:3]]
         held = list_names(graph, neck.elements, 4) or "the lowered load of its routes"
         words = f"{name} is held back by {held}{' together' if len(neck.elements) > 1 else ''}"
         if carried:

@@ -21,6 +21,9 @@ from byway.knowledge.reasoning.signs import SignModel, sign_models
 __all__ = ["CopyTable", "Prepared", "prepare"]
 
 _KEPT = 4
+_ONE_WAY = ("each_side", "left", "right")
+"""Lateralities of primary functions: their routes are parts (face, arm, leg; quadrants), not ways to choose among."""
+
 _cache: OrderedDict[tuple[int, int], Prepared] = OrderedDict()
 
 
@@ -108,7 +111,8 @@ def _prepare(graph: Graph, element_ids: tuple[str, ...]) -> Prepared:
                 continue
             try:
                 usual[copy_id] = _table(network, number, known)
-                leans = leaning(network, second_load)
+                one_way = graph.functions[network.function].laterality in _ONE_WAY
+                leans = None if one_way else leaning(network, second_load)
                 second[copy_id] = usual[copy_id] if leans is None else _table(leans, number, known)
             except GraphError as error:
                 faults.extend(error.faults)

@@ -2,7 +2,8 @@
 
 The network is that of regions joined by segments; a segment weighs as its cross-section (``radius_mm`` squared). Two
 segments that meet at a junction inside white matter pass input on. A region's lost input is the weighted share of its
-connections that is cut on the way, or whose far region is gone. Where it reaches the norm
+connections that is cut on the way, or whose far region is gone; only charted connections count, and a region with few
+of them loses a large share easily. Where it reaches the norm
 ``remote_input_loss_threshold``, the region may be silenced in proportion (diaschisis: von Monakow 1914, from memory).
 """
 
@@ -270,7 +271,7 @@ def _sentence(
     """Why a region is named, or why not."""
     own = float(damage[region])
     through = ", ".join(graph.name_of(model.element_ids[part]) for part in _worst_input(model, damage, region))
-    start = f"{graph.name_of(model.element_ids[region])} lost {lost:.0%} of its input through {through}"
+    start = f"{graph.name_of(model.element_ids[region])} lost {lost:.0%} of its charted input through {through}"
     if own >= _OWN_DAMAGE:
         return f"{start}; it is itself damaged"
     if lost < model.threshold:

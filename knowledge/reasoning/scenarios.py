@@ -45,8 +45,8 @@ USUAL = {axis: values[0] for axis, values in AXES.items()}
 AxisPriors = dict[str, dict[str, float]]
 Priors = Mapping[str, float | Mapping[str, float]]
 
-SLOW_CAUSES = frozenset({"low_grade_tumour", "meningioma", "degeneration", "degenerative"})
-"""Causes that grow over months to years, so that function had time to move."""
+SLOW_CAUSES = frozenset({"low_grade_tumour", "meningioma"})
+"""Causes that grow over months to years in a brain that is otherwise well, so that function had time to move."""
 
 
 PASSING_CAUSES = frozenset({"infarct", "haemorrhage", "trauma", "surgery", "resection"})
@@ -62,7 +62,8 @@ class Scenario:
     dominance : {'left', 'right'}
         Hemisphere that leads language.
     reliance : {'usual', 'second'}
-        Whether the person leans on the usual or on the second route of functions that have one.
+        Whether the person leans on the usual or on the second route of functions that have one; primary functions of
+        one side (strength, feeling, half field) have parts, not ways to choose among, and never shift.
     outside : {'no', 'yes'}
         Whether part of the findings has a cause outside the lesion.
     speaks : {'both', 'cortical', 'segments'}

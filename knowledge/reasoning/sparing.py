@@ -5,17 +5,25 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from byway.knowledge.reasoning.findings import Finding
 from byway.knowledge.reasoning.posterior import Reckoning
 from byway.knowledge.reasoning.rerouting import route_flows
 from byway.knowledge.reasoning.scenarios import Scenario, setting_of
+from byway.knowledge.reasoning.signs import LossCache, SignModel
 from byway.knowledge.reasoning.wording import join, list_names, route_name
 
 __all__ = ["Sparing", "explain_sparing"]
 
+Array = NDArray[np.float32]
+
 _HIT = 0.25  # mean damage from which a sign's absence asks for a reason
 _KEEPS = 0.05  # share of a function that counts as kept by a route or by headroom
+
+
+FEARED = 0.5
+"""P(sign), were all that is hit lost altogether, from which its absence asks for a reason."""
 
 
 @dataclass(frozen=True)
@@ -60,17 +68,17 @@ def _reasons(reckoning: Reckoning, scenario: Scenario, finding: Finding) -> dict
     model = reckoning.model(setting_of(scenario), finding.sign_id)
     usual = reckoning.model(setting_of(plain), finding.sign_id)
     as_drawn = reckoning.damage_of(plain).mean(axis=0)
+    if _feared(reckoning, usual, as_drawn) < FEARED:
+        return {}
     here = reckoning.damage_of(scenario)
-    feared = False
     reasons: dict[str, str] = {}
     for copy in dict.fromkeys((*model.copies, *usual.copies)):
         name = graph.functions[copy.partition("@")[0]].name.lower()
         typical = reckoning.prepared.tables["left", "usual"].get(copy)
-        if typical is not None and as_drawn[typical.rows].max(initial=0.0) >= _HIT:
-            feared = True
-            if scenario.dominance == "right" and "dominant" in copy.partition("@")[2]:
-                reasons["other_side"] = f"{name} lies in the other hemisphere"
-                continue
+        hit = typical is not None and as_drawn[typical.rows].max(initial=0.0) >= _HIT
+        if hit and scenario.dominance == "right" and "dominant" in copy.partition("@")[2]:
+            reasons["other_side"] = f"{name} lies in the other hemisphere"
+            continue
         table = reckoning.prepared.tables[scenario.dominance, scenario.reliance].get(copy)
         if table is None:
             continue
@@ -79,7 +87,6 @@ def _reasons(reckoning: Reckoning, scenario: Scenario, finding: Finding) -> dict
         worst = int(mean.argmax())
         if mean[worst] < _HIT:
             continue
-        feared = True
         network = table.cuts.network
         flows = route_flows(network, mean, reckoning.headroom)
         kept = [flow for flow in flows if flow.now >= _KEEPS and not any(
@@ -97,6 +104,14 @@ def _reasons(reckoning: Reckoning, scenario: Scenario, finding: Finding) -> dict
         spared = float((own[:, worst] < _HIT).mean())
         if 0.1 <= spared < 0.9:
             reasons["spared_anatomy"] = f"in {spared:.0%} of the virtual anatomies that part is spared"
-    if feared and model.sensitivity < 0.8:
+    if model.sensitivity < 0.8:
         reasons["test_misses"] = f"the bedside test misses {1 - model.sensitivity:.0%} of people who have the sign"
-    return reasons if feared else {}
+    return reasons
+
+
+def _feared(reckoning: Reckoning, model: SignModel, damage: Array) -> float:
+    """P(sign) if every element that is hit as drawn were lost altogether and nothing could re-route."""
+    lost = np.where(damage >= _HIT, 1.0, damage).astype(np.float32)
+    tables = reckoning.prepared.tables["left", "usual"]
+    capacities = {copy: tables[copy].cuts.capacity(lost[None, tables[copy].rows], 0.0) for copy in model.copies}
+    return float(np.max(model.tail(0, LossCache(capacities))))

@@ -19,8 +19,8 @@ CAUTION = (
 VERBAL_SCALE: tuple[tuple[float, str], ...] = (
     (0.02, "very unlikely"),
     (0.10, "unlikely"),
-    (0.33, "possible"),
-    (0.55, "about as likely as not"),
+    (0.40, "possible"),
+    (0.60, "about as likely as not"),
     (0.80, "likely"),
     (0.95, "very likely"),
     (1.00, "nearly certain, within what the model knows"),
@@ -43,7 +43,7 @@ DEPARTURE_WORDS: dict[tuple[str, str], str] = {
 def in_words(probability: float) -> str:
     """A probability on the fixed verbal scale.
 
-    >>> in_words(0.4), in_words(0.97)
+    >>> in_words(0.5), in_words(0.97)
     ('about as likely as not', 'nearly certain, within what the model knows')
     """
     return next((words for bound, words in VERBAL_SCALE if probability < bound), VERBAL_SCALE[-1][1])

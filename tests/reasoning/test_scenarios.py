@@ -4,11 +4,12 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from toy_graph import toy_graph
+from toy_graph import FUNCTIONS, toy_graph
 
 from byway.knowledge.faults import BywayError, GraphError
 from byway.knowledge.graph.networks import function_networks
 from byway.knowledge.reasoning.posterior import SCENARIOS
+from byway.knowledge.reasoning.prepared import prepare
 from byway.knowledge.reasoning.scenarios import (
     AXES,
     Scenario,
@@ -113,3 +114,12 @@ def test_settings_are_numbered_as_scenarios_are() -> None:
     assert [setting_of(Scenario(dominance=d, reliance=r)) for d in ("left", "right") for r in ("usual", "second")] == [
         0, 1, 2, 3,
     ]  # fmt: skip
+
+
+def test_primary_functions_do_not_lean() -> None:
+    """Routes of a function that each side has for itself are parts, not ways: the table is the same for both."""
+    parts = FUNCTIONS[6].model_copy(update={"routes": FUNCTIONS[0].routes, "laterality": "each_side"})
+    graph = toy_graph(functions=(*FUNCTIONS[:6], parts, *FUNCTIONS[7:]))
+    tables = prepare(graph, graph.all_element_ids).tables
+    assert tables["left", "second"]["field@left"] is tables["left", "usual"]["field@left"]
+    assert tables["left", "second"]["repetition@dominant"] is not tables["left", "usual"]["repetition@dominant"]
