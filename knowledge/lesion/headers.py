@@ -224,6 +224,8 @@ def _qform(file: Path, header: Any) -> tuple[NDArray[np.float64] | None, int]:
     try:
         affine, code = header.get_qform(coded=True)
     except (ValueError, HeaderDataError):
+        if int(header["sform_code"]) > 0:  # the sform goes first anyway
+            return None, 0
         raise refusal("orientation", file, "a qform that is no rotation: left and right cannot be told",
                "a valid qform, or an sform alone") from None  # fmt: skip
     return affine, int(code)

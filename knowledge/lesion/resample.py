@@ -42,7 +42,8 @@ def to_grid(voxels: NDArray[Any], affine: NDArray[np.float64], grid: Grid, *, li
 
     Notes
     -----
-    Where the image's voxels are the grid's, or a shift and a reordering of them, they are copied, bit for bit.
+    Where the image's voxels are the grid's, or a shift and a reordering of them, they are copied, bit for bit. A place
+    halfway between two voxels takes the one nearer to the midline, so that mirrored images give mirrored masks.
     """
     matrix, offset = _grid_to_image(affine, grid)
     dtype = np.dtype(np.float32) if linear else voxels.dtype.newbyteorder("=")
@@ -51,6 +52,7 @@ def to_grid(voxels: NDArray[Any], affine: NDArray[np.float64], grid: Grid, *, li
         _copy(voxels, np.rint(matrix).astype(int), np.rint(offset).astype(int), out)
         return out
     if not linear:
+        matrix, offset = _grid_to_image(affine, grid, towards_midline=_CLOSE / 1000)
         for first in range(0, grid.shape[0], _SLAB):
             origin = offset + matrix @ np.array([first, 0.0, 0.0])
             _nearest(voxels, matrix, origin, out[first : first + _SLAB])
@@ -76,9 +78,11 @@ def grid_words(shape: tuple[int, ...], affine: NDArray[np.float64]) -> str:
     return f"a {size} mm grid of {' x '.join(str(n) for n in shape)}"
 
 
-def _grid_to_image(affine: NDArray[np.float64], grid: Grid) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Matrix and offset from the grid's voxel indices to the image's."""
-    both = np.linalg.inv(affine) @ grid.affine
+def _grid_to_image(
+    affine: NDArray[np.float64], grid: Grid, *, towards_midline: float = 0.0
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Matrix and offset from the grid's voxel indices to the image's, after a pull of x towards 0."""
+    both = np.linalg.inv(affine) @ np.diag([1.0 - towards_midline, 1.0, 1.0, 1.0]) @ grid.affine
     return both[:3, :3], both[:3, 3]
 
 
@@ -114,7 +118,7 @@ def _copy(voxels: NDArray[Any], turn: NDArray[np.int_], offset: NDArray[np.int_]
 def _nearest(
     voxels: NDArray[Any], matrix: NDArray[np.float64], origin: NDArray[np.float64], slab: NDArray[Any]
 ) -> None:
-    """Fill a slab with the nearest voxels. A place halfway between two voxels takes the lower one's successor."""
+    """Fill a slab with the nearest voxels."""
     index = []
     inside = np.ones(slab.shape, bool)
     steps = [np.arange(n, dtype=np.float64) for n in slab.shape]

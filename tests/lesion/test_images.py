@@ -105,9 +105,17 @@ def test_another_grid_is_resampled_and_said_so(tmp_path):
     lesion = read_lesion(saved(tmp_path / "coarse.nii.gz", mask, TWO_MM))
     assert lesion.notes == ("resampled from a 2 mm grid of 91 x 109 x 91 to the template's 1 mm grid (nearest voxel)",)
     assert lesion.volume_ml == pytest.approx(mask.sum() * 8 / 1000, rel=0.05)
-    # Every second template voxel is halfway between two: the upper one is taken throughout, which moves the whole
-    # mask by a quarter of a millimetre on average.
+    # Every second template voxel lies halfway between two of the file's, so that the mask moves by up to that half.
     np.testing.assert_allclose(TEMPLATE_GRID.to_mm(np.argwhere(lesion.mask)).mean(axis=0), DEEP, atol=0.51)
+
+
+def test_mirrored_coarse_masks_give_mirrored_masks(tmp_path):
+    """A 2 mm grid is symmetric about the midline, and so is what is read from it."""
+    coarse = np.random.default_rng(0).random((91, 109, 91)) < 0.5
+    coarse[:, :20] = coarse[:, 90:] = coarse[:, :, :20] = coarse[:, :, 70:] = coarse[:15] = coarse[76:] = False
+    one = read_lesion(saved(tmp_path / "one.nii", coarse.astype(np.uint8), TWO_MM)).mask
+    other = read_lesion(saved(tmp_path / "other.nii", coarse[::-1].astype(np.uint8), TWO_MM)).mask
+    np.testing.assert_array_equal(one, other[::-1])
 
 
 def test_a_part_of_the_grid_is_copied(tmp_path):
