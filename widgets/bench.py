@@ -32,6 +32,8 @@ __all__ = ["Bench", "BenchHead", "bench"]
 DECK = {
     "profile": ("byway.widgets.accounts.profile", "ProfilePanel"),
     "routes": ("byway.widgets.routes.panel", "RoutesPanel"),
+    "whatif": ("byway.widgets.accounts.whatif", "WhatIfPanel"),
+    "own": ("byway.widgets.accounts.own", "OwnAccountPanel"),
     "graph": ("byway.widgets.graph.panel", "GraphPanel"),
     "head": ("byway.widgets.head.panel", "HeadPanel"),
 }
@@ -157,7 +159,7 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         Parameters
         ----------
         name : str
-            ``profile``, ``routes``, ``graph`` or ``head``.
+            ``profile``, ``routes``, ``whatif``, ``own``, ``graph`` or ``head``.
         """
         if name not in DECK:
             raise BywayError(Fault("view", "bench", name, ", ".join(DECK)))

@@ -17,7 +17,9 @@ from byway.knowledge.reasoning.scenarios import Scenario
 __all__ = ["number_named"]
 
 
-def number_named(explanation: Any, name: str, *, account: int | None = None) -> float:
+def number_named(
+    explanation: Any, name: str, *, account: int | None = None, what_if: Any = None, own: Any = None
+) -> float:
     """The number that a panel shows under a name.
 
     Parameters
@@ -32,9 +34,14 @@ def number_named(explanation: Any, name: str, *, account: int | None = None) -> 
         ``accounts/<rank>/ledger_sum/<column>``, ``accounts/<rank>/bottlenecks/<copy>/capacity``,
         ``accounts/<rank>/counterfactuals/<row>/change``, ``routes/<copy>/capacity``,
         ``routes/<copy>/<route>/usual`` or ``now``, ``routes/<copy>/elements/<element>/damage``,
-        ``graph/signs/<sign>/sensitivity`` or ``specificity``.
+        ``graph/signs/<sign>/sensitivity`` or ``specificity``, ``what_if/signs/<sign>@<side>/before`` or ``after``,
+        ``what_if/functions/<copy>/before`` or ``after``.
     account : int, optional
         For ``routes``: the rank of the account under which they are shown; as drawn where None.
+    what_if : WhatIf, optional
+        For ``what_if``: what the panel of that name shows (its ``result``).
+    own : ScoredAccount, optional
+        For ``own``, which has ``posterior_beside``, ``odds_vs_cortical`` and a ledger: what that panel shows.
 
     Raises
     ------
@@ -50,6 +57,10 @@ def number_named(explanation: Any, name: str, *, account: int | None = None) -> 
                 return _of_account(explanation.accounts[int(rest[0])], rest[1:])
             case "routes":
                 return _of_routes(explanation, rest, account)
+            case "what_if" if rest[0] in ("signs", "functions"):
+                return _cell(getattr(what_if, rest[0]), rest[1], rest[2])
+            case "own":
+                return float(own.posterior_beside) if rest == ["posterior_beside"] else _of_account(own, rest)
             case "graph":
                 return float(getattr(explanation.reckoning.prepared.graph.signs[rest[1]], rest[2]))
             case "damage" | "signs" | "functions" | "next_tests" | "next_images" | "next_axes":

@@ -89,6 +89,7 @@ class Panel(anywidget.AnyWidget):
         self._watched.clear()
         if self._link is not None:
             self._link.unlink()
+            self._link = None
         super().close()
 
     def _heard(self, _: Any, content: Any, buffers: Any) -> None:

@@ -9,7 +9,7 @@ import pandas as pd
 from byway.widgets.panel import claims_of, element_words
 from byway.widgets.wire import plain
 
-__all__ = ["profile_rows", "told_of"]
+__all__ = ["profile_rows", "scored_told", "told_of"]
 
 MOST_ELEMENTS = 8
 MOST_CHANGES = 12
@@ -126,3 +126,19 @@ def _function_name(sign: str, graph: Any) -> str:
         return ""
     most = max(depends, key=lambda dependence: dependence.weight)
     return str(graph.functions[most.function].name)
+
+
+def scored_told(scored: Any) -> dict[str, Any]:
+    """A user's account with its standing beside the others."""
+    ledger = _rows(scored.ledger)
+    told = {
+        "posterior_beside": scored.posterior_beside,
+        "words": scored.words,
+        "odds_vs_cortical": scored.odds_vs_cortical,
+        "explains": [dict(vars(sign)) for sign in scored.explains],
+        "leaves": [dict(vars(sign)) for sign in scored.leaves],
+        "predicts_absent": [dict(vars(sign)) for sign in scored.predicts_absent],
+        "ledger": ledger,
+        "ledger_sum": {name: sum(row[name] for row in ledger) for name in ("loglik", "vs_cortical")},
+    }
+    return dict(plain(told))

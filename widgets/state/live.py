@@ -9,9 +9,9 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from byway.knowledge.cases.desk import Desk, desk_for
+from byway.knowledge.cases.desk import Desk, desk_for, desk_with
 from byway.knowledge.damage.coverage import uncharted_map, uncharted_share
-from byway.knowledge.damage.ensemble import EnsembleSettings, ensemble
+from byway.knowledge.damage.ensemble import Ensemble, EnsembleSettings, ensemble
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.point import point_damage
 from byway.knowledge.graph.graph import Graph
@@ -36,11 +36,19 @@ class LiveScience:
     def __init__(self, desk: Desk | None = None, *, draws: int = 200) -> None:
         self.desk = desk if desk is not None else desk_for()
         self.draws = draws
+        self._drawn: tuple[Lesion, EnsembleSettings, Ensemble] | None = None
 
     @property
     def graph(self) -> Graph:
         """The graph in effect."""
         return self.desk.graph
+
+    def with_graph(self, graph: Graph) -> LiveScience:
+        """Answers from another graph; only what differs is built anew. Draws are shared where geometry is."""
+        other = LiveScience(desk_with(self.desk, graph), draws=self.draws)
+        if other.desk.index is self.desk.index:
+            other._drawn = self._drawn
+        return other
 
     @property
     def geometry(self) -> Geometry:
@@ -67,6 +75,11 @@ class LiveScience:
         """A map over the grid, 0 to 255; see :class:`~byway.widgets.state.science.Science`."""
         return uncharted_map(self.desk.index).view(np.uint8) * np.uint8(255) if kind == "uncharted" else None
 
+    def draws_of(self, lesion: Lesion) -> Any:
+        """The damage ensemble of another lesion, by variant."""
+        settings = EnsembleSettings.from_norms(self.graph, lesion, draws=self.draws)
+        return ensemble(lesion, self.desk.index, settings).draws
+
     def explain(
         self, lesion: Lesion, damage: Any, case: Any, findings: Any, check: Callable[[], None]
     ) -> tuple[Any, Any]:
@@ -76,7 +89,11 @@ class LiveScience:
         def heard(done: int, total: int) -> None:
             check()
 
-        drawn = ensemble(lesion, self.desk.index, settings, progress=heard)
+        if self._drawn is not None and self._drawn[0] is lesion and self._drawn[1] == settings:
+            drawn = self._drawn[2]
+        else:
+            drawn = ensemble(lesion, self.desk.index, settings, progress=heard)
+            self._drawn = (lesion, settings, drawn)
         check()
         spec = case.spec
         explanation = explain_findings(
