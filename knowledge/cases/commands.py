@@ -17,20 +17,29 @@ from byway.knowledge.atomic import write_text
 from byway.knowledge.cases.archive import pack_case, unpack_case
 from byway.knowledge.cases.atlas import write_atlas
 from byway.knowledge.cases.case import open_case
+from byway.knowledge.cases.course import course_of_case
 from byway.knowledge.cases.desk import desk_for
 from byway.knowledge.cases.explaining import damage_of, explain
+from byway.knowledge.cases.files import case_path
 from byway.knowledge.cases.making import new_case
+from byway.knowledge.cases.pages import Note, Pages
+from byway.knowledge.cases.pdf import write_pdf
 from byway.knowledge.cases.privacy import identifying_traces, traces_table
 from byway.knowledge.cases.report import write_report
+from byway.knowledge.cases.similar import similar_to
+from byway.knowledge.cases.tables import write_tables
 from byway.knowledge.cases.wording import explanation_text
-from byway.knowledge.faults import BywayError, Fault
+from byway.knowledge.faults import BywayError, CaseError, Fault
 from byway.knowledge.graph import commands as graph_commands
 from byway.knowledge.lesion.images import read_lesion
 from byway.knowledge.words import word
 
 __all__ = [
+    "archive_list",
     "archive_pack",
     "archive_unpack",
+    "chosen_notes",
+    "course",
     "damage_of_mask",
     "explain_case",
     "graph_atlas",
@@ -40,9 +49,13 @@ __all__ = [
     "graph_table",
     "new_from_mask",
     "open_notebook",
+    "similar",
     "version",
 ]
 
+# JupyterLab would ask the network for news, newer versions and extensions; hospital networks are closed.
+QUIET = ("--LabApp.news_url=None", "--LabApp.check_for_updates_class=jupyterlab.NeverCheckForUpdate",
+         "--LabApp.extension_manager=readonly")  # fmt: skip
 NOTEBOOKS = Path(__file__).resolve().parents[2] / "notebooks"
 
 
@@ -68,7 +81,7 @@ def open_notebook(notebook: Path | None, *, browser: bool) -> int:
     shown = browser and _has_browser()
     command = [sys.executable, "-m", "jupyterlab", str(path.name), "--ServerApp.ip=127.0.0.1",
                f"--ServerApp.root_dir={path.parent}", f"--ServerApp.open_browser={shown}",
-               f"--LabApp.default_url=/lab/tree/{path.name}"]  # fmt: skip
+               f"--LabApp.default_url=/lab/tree/{path.name}", *QUIET]  # fmt: skip
     if getattr(os, "geteuid", lambda: 1)() == 0:
         command.append("--allow-root")
     try:
@@ -85,17 +98,83 @@ def _has_browser() -> bool:
     return True
 
 
-def explain_case(path: Path, *, as_json: bool, report: Path | None, draws: int) -> int:
-    """Explain a case; print words or JSON, and write the report where one is asked for."""
+def explain_case(
+    path: Path, *, as_json: bool, report: Path | None, draws: int, pdf: Path | None = None, tables: Path | None = None,
+    summary: bool = False, notes: str = "all",
+) -> int:  # fmt: skip
+    """Explain a case; print words or JSON, and write report, PDF and tables where they are asked for."""
     case = open_case(path)
     explanation = explain(case, draws=draws)
     if as_json:
         print(explanation.to_json(indent=1))
     else:
         print(explanation_text(case, explanation))
+    choices = {"full": not summary, "notes": chosen_notes(case.folder, notes, full=not summary)}
     if report is not None:
-        write_report(case, explanation, report)
+        write_report(case, explanation, report, **choices)
         _say(f"report written: {report}")
+    if pdf is not None:
+        write_pdf(case, explanation, pdf, **choices)
+        _say(f"report written: {pdf}")
+    if tables is not None:
+        course = course_of_case(case, draws=draws) if case.spec.visits else None
+        write_tables(case, explanation, tables, course)
+        _say(f"tables written: {tables}")
+    _say(word("command.caution"))
+    return 0
+
+
+def chosen_notes(folder: Path, which: str, *, full: bool) -> list[Note] | None:
+    """Notes for a report: ``all`` (in a summary: none), ``none``, ``open`` (not settled), or those with a tag.
+
+    Raises
+    ------
+    CaseError
+        No note carries that tag.
+    """
+    if which == "all":
+        return None
+    pages = Pages(folder)
+    notes = [page for page in pages.current("note") if isinstance(page, Note)]
+    if which == "none":
+        return []
+    if which == "open":
+        settled, origins = pages.settled(), pages.origins("note")
+        return [note for note in notes if not settled.get(origins.get(note.id, note.id), False)]
+    tagged = [note for note in notes if which in note.tags]
+    if not tagged:
+        tags = sorted({tag for note in notes for tag in note.tags})
+        raise CaseError(Fault("no-notes", str(folder), f"no note with the tag {which!r}",
+                              ", ".join(["all", "none", "open", *tags])))  # fmt: skip
+    return tagged
+
+
+def course(path: Path, *, csv: Path | None, draws: int) -> int:
+    """Print what changed between the visits of a case."""
+    case = open_case(path)
+    if not case.spec.visits:
+        raise CaseError(Fault("no-visits", str(case.path), "a case with one time point",
+                              "`visits:` with a date, stage and findings each", "add them to case.yaml"))  # fmt: skip
+    told = course_of_case(case, draws=draws)
+    with pd.option_context("display.width", 200, "display.max_rows", None, "display.max_colwidth", 70):
+        for visit, stage, volume in zip(told.visits, told.stages, told.volumes_ml, strict=True):
+            print(f"{visit}: {stage}, lesion {volume:.1f} ml")
+        for table in (told.damage.head(12), told.functions.head(12), told.findings, told.accounts.head(8)):
+            print(f"\n{table.round(3).to_string()}")
+    if csv is not None:
+        write_tables(case, None, csv, told)
+        _say(f"tables written: {csv}")
+    _say(word("command.caution"))
+    return 0
+
+
+def similar(path: Path, folder: Path) -> int:
+    """Print the cases of a folder by likeness to one."""
+    table = similar_to(open_case(path), folder)
+    with pd.option_context("display.width", 200, "display.max_rows", None, "display.max_colwidth", 60):
+        print(table.round(3).to_string(index=False) if len(table) else "no other case there")
+    for name, reason in table.attrs["left_out"]:
+        _say(f"left out: {name}: {reason}")
     _say(word("command.caution"))
     return 0
 
@@ -159,18 +238,29 @@ def graph_atlas(overlays: Sequence[Path], to: Path) -> int:
     return 0
 
 
-def archive_pack(folder: Path, file: Path) -> int:
-    """Pack a case, after listing what could identify a person."""
+def archive_pack(folder: Path, file: Path, *, reviewed: bool = False) -> int:
+    """Pack a case, once somebody has looked at what could identify a person; otherwise list it, and pack nothing."""
     traces = identifying_traces(folder)
-    names = pack_case(folder, file)
-    print(f"{file}: {len(names)} files")
     if traces:
-        _say("look at these before it leaves; they could identify a person:")
         _say(traces_table(traces).to_string(index=False))
+    names = pack_case(folder, file, reviewed=reviewed)
+    print(f"{file}: {len(names)} files")
     return 0
 
 
+def archive_list(folder: Path) -> int:
+    """List what in a case folder could identify a person; 1 where there is something, 0 where nothing was found."""
+    case_path(folder)
+    traces = identifying_traces(folder)
+    print(traces_table(traces).to_string(index=False) if traces else "nothing found; an empty list is no promise")
+    return 1 if traces else 0
+
+
 def archive_unpack(file: Path, folder: Path) -> int:
-    """Unpack a case into a new folder."""
+    """Unpack a case into a new folder, and list what in it could identify a person."""
     print(unpack_case(file, folder))
+    traces = identifying_traces(folder)
+    if traces:
+        _say("it came with these, which could identify a person:")
+        _say(traces_table(traces).to_string(index=False))
     return 0
