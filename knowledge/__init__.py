@@ -5,9 +5,11 @@ Rooms, from left to right; each imports only from those before it: ``graph``, ``
 """
 
 from byway.knowledge.cases.case import Case, open_case
+from byway.knowledge.cases.course import Course, course_of_case
 from byway.knowledge.cases.explaining import damage_of, explain
 from byway.knowledge.cases.making import new_case
 from byway.knowledge.cases.report import write_report
+from byway.knowledge.cases.similar import similar_to
 from byway.knowledge.faults import BywayError
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.loading import load_graph
@@ -19,10 +21,12 @@ from byway.knowledge.space.atlas import Template, load_template
 __all__ = [
     "BywayError",
     "Case",
+    "Course",
     "Explanation",
     "Graph",
     "Lesion",
     "Template",
+    "course_of_case",
     "damage_of",
     "explain",
     "load_graph",
@@ -30,5 +34,6 @@ __all__ = [
     "new_case",
     "open_case",
     "read_lesion",
+    "similar_to",
     "write_report",
 ]

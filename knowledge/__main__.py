@@ -1,6 +1,7 @@
-"""The command line: ``byway open | explain | damage | new | graph | archive``. Thin: each command calls one room.
+"""The command line: ``byway open | explain | course | similar | damage | new | graph | archive``.
 
-Results go to stdout, progress and notes to stderr. Bad input prints one line and exits with 2.
+Thin: each command calls one room. Results go to stdout, progress and notes to stderr. Bad input prints one line and
+exits with 2.
 """
 
 from __future__ import annotations
@@ -42,7 +43,24 @@ def _parser() -> argparse.ArgumentParser:
     one.add_argument("--json", action="store_true", help=_help("explain_json"))
     one.add_argument("--report", type=Path, metavar="FILE", help=_help("explain_report"))
     one.add_argument("--draws", type=int, default=200, help=_help("explain_draws"))
-    one.set_defaults(run=lambda a: commands.explain_case(a.case, as_json=a.json, report=a.report, draws=a.draws))
+    one.add_argument("--pdf", type=Path, metavar="FILE", help=_help("explain_pdf"))
+    one.add_argument("--tables", type=Path, metavar="FOLDER", help=_help("explain_tables"))
+    one.add_argument("--summary", action="store_true", help=_help("explain_summary"))
+    one.add_argument("--notes", default="all", metavar="WHICH", help=_help("explain_notes"))
+    one.set_defaults(run=lambda a: commands.explain_case(
+        a.case, as_json=a.json, report=a.report, draws=a.draws, pdf=a.pdf, tables=a.tables, summary=a.summary,
+        notes=a.notes))  # fmt: skip
+
+    one = add("course")
+    one.add_argument("case", type=Path, metavar="CASE", help=_help("explain_case"))
+    one.add_argument("--csv", type=Path, metavar="FOLDER", help=_help("course_csv"))
+    one.add_argument("--draws", type=int, default=200, help=_help("explain_draws"))
+    one.set_defaults(run=lambda a: commands.course(a.case, csv=a.csv, draws=a.draws))
+
+    one = add("similar")
+    one.add_argument("case", type=Path, metavar="CASE", help=_help("explain_case"))
+    one.add_argument("folder", type=Path, metavar="FOLDER", help=_help("similar_folder"))
+    one.set_defaults(run=lambda a: commands.similar(a.case, a.folder))
 
     one = add("damage")
     one.add_argument("mask", type=Path, metavar="MASK", help=_help("damage_mask"))
@@ -74,7 +92,11 @@ def _parser() -> argparse.ArgumentParser:
     one = add("pack", archive, "archive_pack")
     one.add_argument("folder", type=Path)
     one.add_argument("file", type=Path)
-    one.set_defaults(run=lambda a: commands.archive_pack(a.folder, a.file))
+    one.add_argument("--reviewed", action="store_true", help=_help("archive_reviewed"))
+    one.set_defaults(run=lambda a: commands.archive_pack(a.folder, a.file, reviewed=a.reviewed))
+    one = add("list", archive, "archive_list")
+    one.add_argument("folder", type=Path)
+    one.set_defaults(run=lambda a: commands.archive_list(a.folder))
     one = add("unpack", archive, "archive_unpack")
     one.add_argument("file", type=Path)
     one.add_argument("folder", type=Path)

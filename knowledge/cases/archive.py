@@ -16,6 +16,7 @@ import zipfile
 from pathlib import Path, PurePosixPath
 
 from byway.knowledge.cases.model import SCHEMA_VERSION
+from byway.knowledge.cases.privacy import identifying_traces
 from byway.knowledge.faults import CaseError, Fault
 
 __all__ = ["ARCHIVE_VERSION", "pack_case", "unpack_case"]
@@ -26,17 +27,35 @@ MOST_FILES = 10_000
 MOST_BYTES = 2_000_000_000
 MOST_RATIO = 200.0
 MOST_MANIFEST = 5_000_000
-KEPT = (".yaml", ".json", ".jsonl", ".nii", ".gz", ".md", ".csv", ".html")
+KEPT = (".yaml", ".json", ".jsonl", ".nii", ".gz", ".md", ".csv", ".html", ".pdf")
 
 
-def pack_case(folder: Path, archive: Path) -> list[str]:
+def pack_case(folder: Path, archive: Path, *, reviewed: bool = False) -> list[str]:
     """Pack a case folder into ``archive`` (zip) and return the names it holds.
 
     Hidden files, links and files of other kinds than a case has stay behind. Times inside the archive are set to a
     fixed date, since file dates can identify a person.
+
+    Parameters
+    ----------
+    folder, archive : Path
+        The case folder, and the file to write.
+    reviewed : bool
+        Say that somebody has looked at :func:`~byway.knowledge.cases.privacy.identifying_traces`; needed where that
+        list is not empty. Whether a date or a name may leave is a person's decision, not a program's.
+
+    Raises
+    ------
+    CaseError
+        There is no case, or something in it could identify a person and nobody has looked; nothing is written.
     """
     if not (folder / "case.yaml").is_file():
         raise CaseError(Fault("no-case", str(folder), "no case.yaml", "a case folder", "name the folder that holds it"))
+    traces = [] if reviewed else identifying_traces(folder)
+    if traces:
+        raise CaseError(Fault("traces", str(folder), f"{len(traces)} things that could identify a person",
+                              "a look at each of them", "read the list, then pack it with --reviewed "
+                              "(reviewed=True); nothing was written"))  # fmt: skip
     files = [path for path in sorted(folder.rglob("*")) if path.is_file() and not path.is_symlink()
              and path.name.endswith(KEPT) and not any(part.startswith(".") for part in path.relative_to(folder).parts)
              and path.resolve() != archive.resolve()]  # fmt: skip

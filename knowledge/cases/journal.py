@@ -6,6 +6,8 @@ with a running number and a checksum; a line torn by a crash is recognised and p
 
 from __future__ import annotations
 
+import importlib
+import importlib.util
 import json
 import os
 import zlib
@@ -16,7 +18,9 @@ from typing import Any
 from byway.knowledge.atomic import append_line
 from byway.knowledge.cases.pages import new_id, now
 
-__all__ = ["Journal", "read_journal"]
+__all__ = ["Journal", "lost_journals", "read_journal"]
+
+fcntl: Any = importlib.import_module("fcntl") if importlib.util.find_spec("fcntl") else None  # not on every system
 
 
 def _checksum(body: str) -> str:
@@ -25,6 +29,8 @@ def _checksum(body: str) -> str:
 
 class Journal:
     """One writer's journal in a case folder.
+
+    The file is locked while its writer lives, so that another kernel can tell a lost writer from one at work.
 
     Parameters
     ----------
@@ -39,6 +45,13 @@ class Journal:
         self.writer = new_id()
         self.path = folder / "journal" / f"{self.writer}.jsonl"
         self.count = 0
+        self._hold: int | None = None
+
+    def close(self) -> None:
+        """Let go of the file; the journal stays."""
+        if self._hold is not None:
+            os.close(self._hold)
+            self._hold = None
 
     def append(self, entry: dict[str, Any]) -> int:
         """Write one entry durably and return its number in this journal; it holds when this returns."""
@@ -46,7 +59,59 @@ class Journal:
         head = {"n": self.count, "time": now(), "author": self.author, "process": os.getpid()}
         body = json.dumps({**head, **entry}, separators=(",", ":"), ensure_ascii=False, allow_nan=False)
         append_line(self.path, f"{_checksum(body)} {body}")
+        if self._hold is None:
+            self._hold = os.open(self.path, os.O_RDWR)
+            _lock(self._hold)
         return self.count
+
+
+def _lock(handle: int) -> bool:
+    """Take the lock that a writer holds; False where somebody has it. The system lets go when a process dies."""
+    if fcntl is None:
+        return True  # no such locks here: every journal but one's own counts as lost, and recovery asks by author
+    try:
+        fcntl.flock(handle, fcntl.LOCK_EX | fcntl.LOCK_NB)
+    except OSError:
+        return False
+    return True
+
+
+def lost_journals(folder: Path, author: str) -> dict[str, list[dict[str, Any]]]:
+    """Journals of an author whose writer is gone and whose entries nobody has taken over, oldest first.
+
+    Parameters
+    ----------
+    folder : Path
+        The case folder.
+    author : str
+        Whose; another person's lost strokes are theirs to take up.
+
+    Returns
+    -------
+    dict
+        Writer to its whole entries. A journal that was taken over is named by an entry ``{"kind": "taken"}``.
+    """
+    entries = read_journal(folder)
+    taken = {entry["from"] for entry in entries if entry.get("kind") == "taken"}
+    lost: dict[str, list[dict[str, Any]]] = {}
+    for path in sorted((folder / "journal").glob("*.jsonl")):
+        if path.stem in taken:
+            continue
+        own = [entry for entry in entries if entry["writer"] == path.stem]
+        if own and own[0]["author"] == author and _is_free(path):
+            lost[path.stem] = own
+    return lost
+
+
+def _is_free(path: Path) -> bool:
+    try:
+        handle = os.open(path, os.O_RDWR)
+    except OSError:
+        return True  # a folder that cannot be written has no writer at work
+    try:
+        return _lock(handle)
+    finally:
+        os.close(handle)
 
 
 def _lines(path: Path) -> Iterator[dict[str, Any]]:

@@ -11,7 +11,7 @@ import json
 import re
 import secrets
 import time
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Annotated, Literal
@@ -48,13 +48,14 @@ class Anchor(BaseModel):
 
 
 class Page(BaseModel):
-    """Base of what people write: who, when, and what it replaces."""
+    """Base of what people write: who, when, and what it replaces (several pages where it settles rivals)."""
 
     model_config = ConfigDict(frozen=True, extra="forbid")
     id: str = Field(default_factory=new_id, pattern=ID.pattern)
     author: Annotated[str, Field(min_length=1, max_length=80)]
     time: str = Field(default_factory=now)
     replaces: str | None = None
+    also_replaces: tuple[str, ...] = ()
 
 
 class Note(Page):
@@ -142,7 +143,7 @@ class Pages:
     def current(self, kind: str) -> list[Page]:
         """Pages that no later page replaces. Two that replace the same page both stand."""
         pages = self.all(kind)
-        replaced = {page.replaces for page in pages if page.replaces}
+        replaced = {old for page in pages for old in (page.replaces, *page.also_replaces) if old}
         return [page for page in pages if page.id not in replaced]
 
     def rivals(self, kind: str) -> list[tuple[Page, ...]]:
@@ -153,9 +154,41 @@ class Pages:
                 groups.setdefault(page.replaces, []).append(page)
         return [tuple(group) for group in groups.values() if len(group) > 1]
 
+    def settle_rivals(self, kept: Page, author: str) -> Page:
+        """Keep one of several versions of a page: a new page with its words replaces them all.
+
+        Raises
+        ------
+        CaseError
+            The page has no rival now.
+        """
+        kind: str = kept.kind  # type: ignore[attr-defined]
+        group = next((g for g in self.rivals(kind) if kept.id in {page.id for page in g}), ())
+        if not group:
+            raise CaseError(Fault("no-rival", kept.id, "a page that has no other version", "", "nothing was written"))
+        ids = [page.id for page in group if page.id != kept.id]
+        fresh = {"id": new_id(), "time": now(), "author": author, "replaces": kept.id, "also_replaces": tuple(ids)}
+        settled = kept.model_copy(update=fresh)
+        self.put(settled)
+        return settled
+
+    def origins(self, kind: str) -> dict[str, str]:
+        """For every page that replaces another, the id of the page that was first in its line."""
+        above = {page.id: page.replaces for page in self.all(kind) if page.replaces}
+        first: dict[str, str] = {}
+        for page in above:
+            oldest, seen = page, {page}
+            while (older := above.get(oldest)) and older not in seen:
+                oldest = older
+                seen.add(older)
+            first[page] = oldest
+        return first
+
     def settled(self) -> dict[str, bool]:
-        """For every note with a resolution, whether the newest says that it is settled."""
-        return {page.note: page.settled for page in self.all("resolution") if isinstance(page, Resolution)}
+        """For every note with a resolution, by the id of the first in its line: whether the newest settles it."""
+        first = self.origins("note")
+        return {first.get(page.note, page.note): page.settled
+                for page in self.all("resolution") if isinstance(page, Resolution)}  # fmt: skip
 
     def standings(self) -> dict[str, dict[str, Standing]]:
         """For each account, each person's newest standing."""
@@ -179,13 +212,23 @@ class Pages:
             return None
 
 
-def thread(notes: Iterable[Note]) -> list[tuple[int, Note]]:
-    """Notes with the depth of each in its thread, answers below what they answer, oldest first."""
+def thread(notes: Iterable[Note], origins: Mapping[str, str] | None = None) -> list[tuple[int, Note]]:
+    """Notes with the depth of each in its thread, answers below what they answer, oldest first.
+
+    Parameters
+    ----------
+    notes : iterable of Note
+        Usually the current ones.
+    origins : mapping, optional
+        From :meth:`Pages.origins`: an edited note keeps its place and its answers.
+    """
+    first = origins or {}
     below: dict[str | None, list[Note]] = {}
     listed = list(notes)
-    ids = {note.id for note in listed}
-    for note in sorted(listed, key=lambda n: n.id):
-        below.setdefault(note.reply_to if note.reply_to in ids else None, []).append(note)
+    ids = {first.get(note.id, note.id) for note in listed}
+    for note in sorted(listed, key=lambda n: (first.get(n.id, n.id), n.id)):
+        above = first.get(note.reply_to, note.reply_to) if note.reply_to else None
+        below.setdefault(above if above in ids else None, []).append(note)
     rows: list[tuple[int, Note]] = []
     seen: set[str] = set()
 
@@ -194,7 +237,7 @@ def thread(notes: Iterable[Note]) -> list[tuple[int, Note]]:
             if note.id not in seen:
                 seen.add(note.id)
                 rows.append((depth, note))
-                walk(note.id, depth + 1)
+                walk(first.get(note.id, note.id), depth + 1)
 
     walk(None, 0)
     return rows

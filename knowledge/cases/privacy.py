@@ -6,21 +6,28 @@ name when it sees one: the list is for a reader, and an empty list is no promise
 
 from __future__ import annotations
 
+import gzip
 import re
+import zlib
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Any
 
 import nibabel as nib
+import numpy as np
 import pandas as pd
 from nibabel.filebasedimages import ImageFileError
 
-__all__ = ["Trace", "identifying_traces", "traces_table"]
+from byway.knowledge.atomic import write_bytes
+from byway.knowledge.faults import Fault, ImageError
+
+__all__ = ["Trace", "identifying_traces", "stripped_image", "traces_table"]
 
 PATTERNS = {
     "a date": re.compile(r"(?<!\d)(?:19|20)\d\d[-_/.]?(?:0[1-9]|1[0-2])[-_/.]?(?:0[1-9]|[12]\d|3[01])(?!\d)"
                          r"|\b\d{1,2}[./]\d{1,2}[./](?:19|20)?\d\d\b"),
-    "a long number": re.compile(r"(?<!\d)\d{6,}(?!\d)"),
+    "a long number": re.compile(r"(?<![\d.])\d{6,}(?![\d.])"),
     "a mail address": re.compile(r"\b[\w.+-]+@[\w-]+\.[\w.]+\b"),
     "a DICOM name": re.compile(r"\b\w+\^\w+"),
     "a title with a name": re.compile(r"\b(?:Mr|Mrs|Ms|Dr|Prof|Herr|Frau|Mme)\.? [A-Z][a-z]+"),
@@ -28,7 +35,8 @@ PATTERNS = {
 FREE_TEXT = ("descrip", "aux_file", "intent_name", "db_name", "data_type")
 TEXT_FILES = {".yaml", ".json", ".jsonl", ".md", ".csv"}
 # Times of our own pages and journals are the record of who wrote when; ids and checksums are random or derived.
-OUR_FIELDS = re.compile(r'"(?:time|id|note|replaces|reply_to|process)": ?(?:"[^"]*"|\d+)|^[0-9a-f]{8} ', re.M)
+OUR_FIELDS = re.compile(r'"(?:time|id|note|replaces|reply_to|process|from|indices|values)": ?(?:"[^"]*"|\d+)'
+                        r"|^[0-9a-f]{8} ", re.M)  # fmt: skip
 MOST_TEXT = 2_000_000
 
 
@@ -70,7 +78,7 @@ def _matches(text: str) -> Iterator[tuple[str, str]]:
 
 def _in_header(path: Path, name: str) -> list[Trace]:
     try:
-        header = nib.load(path).header
+        header: Any = nib.load(path).header
     except (ImageFileError, OSError, ValueError) as error:
         return [Trace(name, "header", "an unreadable header", str(error).splitlines()[0])]
     traces = []
@@ -92,6 +100,39 @@ def _in_text(path: Path, name: str) -> list[Trace]:
         shown = OUR_FIELDS.sub("", line)
         traces += [Trace(name, f"line {number}", kind, found) for kind, found in _matches(shown)]
     return traces
+
+
+def stripped_image(source: Path, target: Path) -> list[Trace]:
+    """Copy a NIfTI image without free text, extensions or a telling name, and say what was left behind.
+
+    Parameters
+    ----------
+    source : Path
+        Any NIfTI file; it is not changed.
+    target : Path
+        Where the copy goes; voxels and their place in space are the same.
+
+    Raises
+    ------
+    ImageError
+        The file is no image that can be read.
+    """
+    found = [Trace(source.name, "file name", kind, text) for kind, text in _matches(source.name)]
+    found += _in_header(source, source.name)
+    try:
+        image: Any = nib.load(source)
+        data = np.asanyarray(image.dataobj)
+    except (ImageFileError, OSError, ValueError, EOFError, zlib.error) as error:
+        raise ImageError(Fault("not-an-image", source.name, str(error).splitlines()[0], "a NIfTI file", "")) from error
+    made: Any = nib.Nifti1Image
+    copy = made(data, image.affine)
+    copy.header.set_xyzt_units("mm")
+    for get, put in ((image.get_sform, copy.set_sform), (image.get_qform, copy.set_qform)):
+        affine, code = get(coded=True)
+        put(affine, int(code))
+    packed = copy.to_bytes()
+    write_bytes(target, gzip.compress(packed, 4, mtime=0) if target.name.endswith(".gz") else packed)
+    return found
 
 
 def traces_table(traces: list[Trace]) -> pd.DataFrame:

@@ -13,10 +13,15 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
+from byway.knowledge.cases.case import Case, open_case
+from byway.knowledge.cases.desk import Desk
+from byway.knowledge.cases.explaining import desk_of, latest
 from byway.knowledge.cases.pages import Pages
+from byway.knowledge.damage.point import point_damage
+from byway.knowledge.faults import BywayError
 from byway.knowledge.reasoning.findings import Finding
 
-__all__ = ["alike_by_damage", "alike_by_findings", "similar_cases"]
+__all__ = ["alike_by_damage", "alike_by_findings", "similar_cases", "similar_to"]
 
 
 def alike_by_damage(one: NDArray[np.floating], other: NDArray[np.floating]) -> float:
@@ -44,6 +49,8 @@ def similar_cases(
     share: NDArray[np.floating],
     findings: Iterable[Finding],
     others: Mapping[Path, tuple[NDArray[np.floating], tuple[Finding, ...]]],
+    *,
+    below: Path | None = None,
 ) -> pd.DataFrame:
     """Rank other cases by likeness to this one.
 
@@ -55,6 +62,8 @@ def similar_cases(
         This case's findings.
     others : mapping
         Case folder to its shares (same order) and findings.
+    below : Path, optional
+        Name cases by their path below this folder, instead of by the folder's name.
 
     Returns
     -------
@@ -70,8 +79,46 @@ def similar_cases(
         for account, people in Pages(folder).standings().items():
             for author, standing in people.items():
                 said[standing.stands].append(f"{account} ({author})")
-        rows.append({"case": folder.name, "by_damage": damage, "by_findings": seen, "signs_in_both": count,
+        name = folder.relative_to(below).as_posix() if below is not None else folder.name
+        rows.append({"case": name, "by_damage": damage, "by_findings": seen, "signs_in_both": count,
                      "likeness": (damage + seen) / 2 if count else damage,
                      **{word: "; ".join(names) for word, names in said.items()}})  # fmt: skip
     columns = ["case", "by_damage", "by_findings", "signs_in_both", "likeness", "held", "doubted", "ruled_out"]
     return pd.DataFrame(rows, columns=columns).sort_values("likeness", ascending=False, ignore_index=True)
+
+
+def similar_to(case: Case, folder: str | Path, *, desk: Desk | None = None) -> pd.DataFrame:
+    """Rank the cases of a folder by likeness to this one, on this one's graph.
+
+    Parameters
+    ----------
+    case : Case
+        The case in hand; it is left out of the ranking.
+    folder : str or Path
+        A folder of case folders, looked through to any depth.
+    desk : Desk, optional
+        Graph and geometry; by default this case's.
+
+    Returns
+    -------
+    DataFrame
+        As :func:`similar_cases`; ``case`` is the path below ``folder``. ``attrs["left_out"]`` lists cases that could
+        not be read, with the reason.
+    """
+    desk, place = desk or desk_of(case), Path(folder)
+    others, left_out = {}, []
+    for path in sorted(place.rglob("case.yaml")):
+        if path.resolve() == case.path.resolve() or any(part.startswith(".") for part in path.relative_to(place).parts):
+            continue
+        try:
+            other = open_case(path)
+            others[path.parent] = _likeness_of(other, desk)
+        except BywayError as error:
+            left_out.append((path.parent.relative_to(place).as_posix(), str(error)))
+    table = similar_cases(*_likeness_of(case, desk), others, below=place)
+    table.attrs["left_out"] = left_out
+    return table
+
+
+def _likeness_of(case: Case, desk: Desk) -> tuple[NDArray[np.floating], tuple[Finding, ...]]:
+    return point_damage(case.lesion, desk.index).share, latest(case.findings(desk.graph))
