@@ -73,7 +73,7 @@ def _say(text: str) -> None:
 
 def open_notebook(notebook: Path | None, *, browser: bool) -> int:
     """Build the geometry if it is not there, then run JupyterLab on a notebook, on loopback with its usual token."""
-    path = notebook or NOTEBOOKS / "first_case.ipynb"
+    path = (notebook or NOTEBOOKS / "first_case.ipynb").resolve()
     if not path.is_file():
         where = "the name of a notebook" if notebook else word("command.no_notebook")
         raise BywayError(Fault("no-notebook", str(path), "no such notebook", where, "name one"))
