@@ -172,7 +172,8 @@ def reckon(
     rates = graph.norm("outside_sign_rate", "mild"), graph.norm("outside_sign_rate", "moderate"), graph.norm(
         "outside_sign_rate", "severe")  # fmt: skip
     capacities = _capacities(prepared, states, headroom)
-    losses = [LossCache(each) for each in capacities]
+    known: dict[tuple[tuple[int, ...], float], Array] = {}
+    losses = [LossCache(each, known) for each in capacities]
     kept = tuple(findings)
     bare = Reckoning(prepared, draws, states, headroom, priors, kept, graph.norm("finding_lapse"), rates, capacities,
                      np.zeros((0, len(SCENARIOS), states.n_draws), np.float32), losses)  # fmt: skip

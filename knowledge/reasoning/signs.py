@@ -127,18 +127,31 @@ def combined_capacity(capacities: Mapping[str, Array], copies: tuple[str, ...]) 
 
 
 class LossCache:
-    """Losses by copies and threshold, so that signs which share them reckon them once."""
+    """Losses by copies and threshold, so that signs which share them reckon them once.
 
-    def __init__(self, capacities: Mapping[str, Array]) -> None:
+    Parameters
+    ----------
+    capacities : mapping
+        Damaged copies and their capacity; others are intact.
+    known : dict, optional
+        Losses already reckoned, shared with caches in which some copies have the very same capacities.
+    """
+
+    def __init__(
+        self, capacities: Mapping[str, Array], known: dict[tuple[tuple[int, ...], float], Array] | None = None
+    ) -> None:
         self._capacities = capacities
-        self._known: dict[tuple[tuple[str, ...], float], Array | None] = {}
+        self._known = {} if known is None else known
 
     def get(self, copies: tuple[str, ...], threshold: float) -> Array | None:
         """Loss of the copies at a threshold; None where they are intact in every state."""
-        key = copies, threshold
+        if any(copy not in self._capacities for copy in copies):
+            return None
+        key = tuple(id(self._capacities[copy]) for copy in copies), threshold
         if key not in self._known:
             capacity = combined_capacity(self._capacities, copies)
-            self._known[key] = None if capacity is None else loss(capacity, threshold)
+            assert capacity is not None
+            self._known[key] = loss(capacity, threshold)
         return self._known[key]
 
 
