@@ -204,3 +204,20 @@ def test_graded_damage_goes_the_same_way() -> None:
     at = "repetition@dominant"
     assert slow.functions.set_index("function").loc[at, "capacity"] > acute.functions.set_index("function").loc[
         at, "capacity"]  # fmt: skip
+
+
+def test_no_damage_at_all() -> None:
+    """Without a lesion only a cause outside can explain anything, and nothing breaks."""
+    explanation = toy_explanation({}, [found("amnesia"), found("hand_weakness", "left")])
+    assert explanation.accounts[0].kind == "outside_lesion"
+    assert explanation.accounts[0].elements == ()
+    assert explanation.next_tests.empty
+    assert explanation.next_images.empty
+    assert len(json.loads(explanation.to_json())["accounts"]) == 2
+
+
+def test_no_damage_and_no_findings() -> None:
+    """An empty case leaves the priors."""
+    explanation = toy_explanation({})
+    assert explanation.accounts[0].is_plain
+    assert explanation.accounts[0].posterior == pytest.approx(0.92)
