@@ -34,6 +34,7 @@ DECK = {
     "routes": ("byway.widgets.routes.panel", "RoutesPanel"),
     "whatif": ("byway.widgets.accounts.whatif", "WhatIfPanel"),
     "own": ("byway.widgets.accounts.own", "OwnAccountPanel"),
+    "steady": ("byway.widgets.accounts.steady", "SteadyPanel"),
     "graph": ("byway.widgets.graph.panel", "GraphPanel"),
     "head": ("byway.widgets.head.panel", "HeadPanel"),
 }
@@ -96,11 +97,7 @@ class BenchHead(Panel):
 
     def save(self) -> None:
         """Write the findings and what is known of the person to case.yaml."""
-        findings = [
-            {"sign": f.sign, "side": f.side, "grade": f.grade, "test": f.test, "date": f.date, "by": f.by}
-            for f in self.state.findings
-        ]
-        self.state.set_case(self.state.case.with_spec(findings=findings).save())
+        self.state.save_case()
         self.state.tell(word("bench.saved", path=self.state.case.path.name))
 
     def on_refused(self) -> None:
@@ -159,7 +156,7 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         Parameters
         ----------
         name : str
-            ``profile``, ``routes``, ``whatif``, ``own``, ``graph`` or ``head``.
+            ``profile``, ``routes``, ``whatif``, ``own``, ``steady``, ``graph`` or ``head``.
         """
         if name not in DECK:
             raise BywayError(Fault("view", "bench", name, ", ".join(DECK)))

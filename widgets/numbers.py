@@ -18,7 +18,7 @@ __all__ = ["number_named"]
 
 
 def number_named(
-    explanation: Any, name: str, *, account: int | None = None, what_if: Any = None, own: Any = None
+    explanation: Any, name: str, *, account: int | None = None, what_if: Any = None, own: Any = None, steady: Any = None
 ) -> float:
     """The number that a panel shows under a name.
 
@@ -43,6 +43,9 @@ def number_named(
     own : ScoredAccount, optional
         For ``own``, which has ``posterior_beside``, ``odds_vs_cortical`` and a ledger: what that panel shows.
 
+    steady : Sensitivity, optional
+        For ``steady/<row>/<column>``: what that panel shows.
+
     Raises
     ------
     BywayError
@@ -59,6 +62,8 @@ def number_named(
                 return _of_routes(explanation, rest, account)
             case "what_if" if rest[0] in ("signs", "functions"):
                 return _cell(getattr(what_if, rest[0]), rest[1], rest[2])
+            case "steady":
+                return float(steady.table[rest[1]].iloc[int(rest[0])])
             case "own":
                 return float(own.posterior_beside) if rest == ["posterior_beside"] else _of_account(own, rest)
             case "graph":

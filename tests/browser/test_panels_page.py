@@ -24,15 +24,19 @@ from byway.widgets import (
     RoutesPanel,
     number_named,
 )
+from byway.widgets.accounts.own import OwnAccountPanel
+from byway.widgets.accounts.steady import SteadyPanel
+from byway.widgets.accounts.whatif import NOTHING, WhatIfPanel
 
-PANELS = (HitsPanel, FindingsPanel, AccountsPanel, ProfilePanel, RoutesPanel, GraphPanel)
+PANELS = (HitsPanel, FindingsPanel, AccountsPanel, ProfilePanel, RoutesPanel, GraphPanel, WhatIfPanel, OwnAccountPanel,
+          SteadyPanel)  # fmt: skip
 NUMBERS = "() => [...document.querySelectorAll('[data-name]')].map((n) => [n.dataset.name, Number(n.dataset.value)])"
 NAMELESS = """() => [...document.querySelectorAll('button, input, select, [role=radiogroup]')].filter((e) => {
   const label = e.labels?.[0]?.textContent || e.getAttribute('aria-label') || e.title || e.textContent
     || document.getElementById(e.getAttribute('aria-labelledby'))?.textContent;
   return !label || !label.trim(); }).map((e) => e.outerHTML)"""
 LOOSE = r"""() => {
-  const told = '[data-name], option, .bw-cautions, .bw-necks, .bw-plain-list, .bw-prof-key, thead, .bw-route-facts';
+  const told = '[data-name], option, output, .bw-cautions, .bw-necks, .bw-plain-list, .bw-prof-key, thead, .bw-route-facts';
   const out = [];
   const walk = document.createTreeWalker(document.querySelector('.bw-body'), NodeFilter.SHOW_TEXT);
   while (walk.nextNode()) {
@@ -44,6 +48,17 @@ HANDLERS = """() => [...document.querySelectorAll('main *')].flatMap((n) => n.ge
   .filter((name) => name.startsWith('on'))"""
 OPEN_ALL = """() => { for (const d of document.querySelectorAll('details')) d.open = true;
   for (const b of document.querySelectorAll('.bw-card-head[aria-expanded=false]')) b.click(); }"""
+
+
+def filled(panel: Any) -> Any:
+    """The panel with something asked of it, where it would else show little."""
+    if isinstance(panel, WhatIfPanel):
+        panel.settings = {**NOTHING, "severed": ["frontal@left"]}
+    elif isinstance(panel, OwnAccountPanel):
+        panel.draft = {"title": "Own", "text": "why", "elements": ["arc.long@left"], "scenario": {"remote": "yes"}}
+    elif isinstance(panel, SteadyPanel):
+        panel.examine()
+    return panel
 
 
 class GraphScience:
@@ -82,7 +97,7 @@ def explanation() -> Explanation:
 @pytest.mark.parametrize("panel", PANELS)
 def test_a_panel_draws(page: Any, panel: Any, dark: bool, artefacts: Path) -> None:
     """Each panel draws without an error, in both themes, shows the caution, and asks for nothing from any network."""
-    bare = Bare(page, panel(toy_state()), width=1000, dark=dark)
+    bare = Bare(page, filled(panel(toy_state())), width=1000, dark=dark)
     page.evaluate(OPEN_ALL)
     assert page.locator(".bw-caution").is_visible()
     page.screenshot(path=artefacts / f"{panel.__name__}_{'dark' if dark else 'light'}.png", full_page=True)
@@ -93,29 +108,32 @@ def test_a_panel_draws(page: Any, panel: Any, dark: bool, artefacts: Path) -> No
 @pytest.mark.parametrize("panel", PANELS)
 def test_every_control_has_a_name(page: Any, panel: Any) -> None:
     """Every button, input and list can be named by a screen reader, and the panel is a named region."""
-    Bare(page, panel(toy_state()))
+    Bare(page, filled(panel(toy_state())))
     page.evaluate(OPEN_ALL)
     nameless = page.evaluate(NAMELESS)
     assert nameless == []
     assert page.locator("section.byway-panel[aria-label]").count() == 1
 
 
-@pytest.mark.parametrize("panel", [HitsPanel, AccountsPanel, ProfilePanel, RoutesPanel, FindingsPanel])
+@pytest.mark.parametrize("panel", [p for p in PANELS if p is not GraphPanel])
 def test_every_number_is_that_of_the_api(page: Any, panel: Any) -> None:
     """Each number on the screen says its name, and Python gives the same number under it."""
     state = toy_state()
-    Bare(page, panel(state))
+    made = filled(panel(state))
+    Bare(page, made)
     page.evaluate(OPEN_ALL)
     shown = page.evaluate(NUMBERS)
     assert len(shown) > 5
     for name, value in shown:
-        assert value == pytest.approx(number_named(state.explanation, name), rel=1e-6, abs=1e-6), name
+        own = getattr(made, "result", None)
+        known = number_named(state.explanation, name, what_if=own, own=own, steady=own)
+        assert value == pytest.approx(known, rel=1e-6, abs=1e-6), name
 
 
-@pytest.mark.parametrize("panel", [HitsPanel, AccountsPanel, ProfilePanel, RoutesPanel])
+@pytest.mark.parametrize("panel", [HitsPanel, AccountsPanel, ProfilePanel, RoutesPanel, WhatIfPanel, OwnAccountPanel])
 def test_no_number_goes_without_a_name(page: Any, panel: Any) -> None:
     """Every percentage on a panel stands in a node that names it (labels of choices and pictures apart)."""
-    Bare(page, panel(toy_state()))
+    Bare(page, filled(panel(toy_state())))
     page.evaluate(OPEN_ALL)
     loose = page.evaluate(LOOSE)
     assert loose == []
@@ -289,7 +307,7 @@ def poisoned_graph() -> Graph:
 def test_injected_scripts_stay_inert(page: Any, panel: Any) -> None:
     """A hundred script-injection strings, as names, claims, notes and sources, are shown as text and run nothing."""
     assert len(set(INJECTIONS)) == 100
-    bare = Bare(page, panel(toy_state(poisoned_graph())), width=1100)
+    bare = Bare(page, filled(panel(toy_state(poisoned_graph()))), width=1100)
     before = page.evaluate("document.querySelectorAll('script').length")
     page.evaluate(OPEN_ALL)
     for key in ("all", "next", "compare", "wheel"):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from pathlib import Path
 from types import SimpleNamespace
 
 import numpy as np
@@ -10,14 +11,19 @@ import pytest
 from toy_explanation import TOY_FINDINGS, toy_explanation
 from toy_graph import toy_graph
 
+from byway.knowledge.cases.pages import Pages
 from byway.knowledge.faults import BywayError
 from byway.knowledge.reasoning.explain import Explanation
 from byway.knowledge.reasoning.findings import Finding
 from byway.widgets import AccountsPanel, FindingsPanel, GraphPanel, HitsPanel, ProfilePanel, RoutesPanel, number_named
+from byway.widgets.accounts.own import OwnAccountPanel
+from byway.widgets.accounts.steady import SteadyPanel
+from byway.widgets.accounts.whatif import NOTHING, WhatIfPanel
 from byway.widgets.panel import Panel, state_of
 from byway.widgets.state import BenchState
 
-PANELS = (HitsPanel, FindingsPanel, AccountsPanel, ProfilePanel, RoutesPanel, GraphPanel)
+PANELS = (HitsPanel, FindingsPanel, AccountsPanel, ProfilePanel, RoutesPanel, GraphPanel, WhatIfPanel, OwnAccountPanel,
+          SteadyPanel)  # fmt: skip
 
 
 @pytest.fixture(scope="module")
@@ -229,6 +235,89 @@ class TestNumbers:
         """A name that nothing has raises and says so."""
         with pytest.raises(BywayError, match="no number has this name"):
             number_named(explanation, name)
+
+
+class TestWhatIf:
+    """Before and after an imagined change."""
+
+    def test_nothing_changed_shows_nothing(self, explanation: Explanation) -> None:
+        """As it is, there is no result."""
+        assert WhatIfPanel(explanation).result is None
+
+    def test_a_segment_made_whole_brings_repetition_back(self, explanation: Explanation) -> None:
+        """With both cut segments whole, the expected loss of repetition falls."""
+        panel = WhatIfPanel(explanation)
+        panel.settings = {**NOTHING, "restored": ["arc.long@left", "arc.anterior@left"]}
+        (row,) = (row for row in panel.told["signs"] if row["id"] == "repetition_loss@none")
+        assert row["after"] < row["before"] - 0.3
+        named = number_named(explanation, "what_if/signs/repetition_loss@none/after", what_if=panel.result)
+        assert named == row["after"]
+
+    def test_chronic_is_not_acute(self, explanation: Explanation) -> None:
+        """Another stage changes what the routes can carry."""
+        panel = WhatIfPanel(explanation)
+        panel.settings = {**NOTHING, "stage": "chronic"}
+        assert panel.told["functions"]
+
+    @pytest.mark.parametrize("bad", [{"growth_mm": 99}, {"stage": "eternal"}, {"severed": ["nowhere@left"]}])
+    def test_what_cannot_be_is_refused(self, explanation: Explanation, bad: dict[str, object]) -> None:
+        """A change that makes no sense becomes a notice and shows nothing."""
+        panel = WhatIfPanel(explanation)
+        panel.settings = {**NOTHING, **bad}
+        assert panel.told == {}
+        assert panel.state.notice
+
+
+class TestOwnAccount:
+    """The user's own account on the same ledger."""
+
+    def test_all_damage_as_drawn_is_scored_as_the_tool_scores_it(self, explanation: Explanation) -> None:
+        """An own account that supposes what an account of the tool supposes has the same odds."""
+        panel = OwnAccountPanel(explanation)
+        panel.draft = {"title": "x", "text": "", "elements": [], "scenario": {"speaks": "segments"}}
+        (same,) = (a for a in explanation.accounts if a.key == "speaks.segments")
+        ledger_of_findings = [row for row in panel.told["ledger"] if row["row"] == "finding"]
+        assert [row["loglik"] for row in ledger_of_findings] == pytest.approx(
+            same.ledger.loc[same.ledger["row"] == "finding", "loglik"].tolist(), abs=0.05
+        )
+
+    def test_a_setting_that_is_none_is_refused(self, explanation: Explanation) -> None:
+        """An axis or value that does not exist becomes a notice."""
+        panel = OwnAccountPanel(explanation)
+        panel.draft = {"title": "x", "text": "", "elements": [], "scenario": {"weather": "wet"}}
+        assert panel.told == {}
+        assert "weather" in panel.state.notice
+
+    def test_it_is_kept_as_a_page(self, explanation: Explanation, tmp_path: Path) -> None:
+        """Kept in the case, it is a page of its own with its author, and the list shows it."""
+        state = state_with(explanation)
+        state.case = SimpleNamespace(folder=tmp_path, spec=SimpleNamespace(asymmetries=()))
+        panel = OwnAccountPanel(state)
+        panel.author = "KL"
+        panel.draft = {"title": "Only the long one", "text": "why", "elements": ["arc.long@left"], "scenario": {}}
+        panel._heard(None, {"kind": "keep"}, [])
+        (page,) = Pages(tmp_path).current("account")
+        assert (page.author, page.title, page.elements) == ("KL", "Only the long one", ("arc.long@left",))
+        assert panel.kept[0]["title"] == "Only the long one"
+
+    def test_without_an_author_nothing_is_written(self, explanation: Explanation, tmp_path: Path) -> None:
+        """No author, no page."""
+        state = state_with(explanation)
+        state.case = SimpleNamespace(folder=tmp_path, spec=SimpleNamespace(asymmetries=()))
+        panel = OwnAccountPanel(state)
+        panel.draft = {"title": "x", "text": "", "elements": ["arc.long@left"], "scenario": {}}
+        panel._heard(None, {"kind": "keep"}, [])
+        assert list(tmp_path.iterdir()) == []
+        assert state.notice
+
+
+def test_the_ranking_is_examined_when_asked(explanation: Explanation) -> None:
+    """Nothing is examined by itself; asked, every row says who would lead and with which posterior."""
+    panel = SteadyPanel(explanation)
+    assert panel.told == {}
+    panel._heard(None, {"kind": "examine"}, [])
+    for i, row in enumerate(panel.told["rows"]):
+        assert number_named(explanation, f"steady/{i}/p_usual_first", steady=panel.result) == row["p_usual_first"]
 
 
 def test_graph_edges_carry_their_claims() -> None:
