@@ -168,7 +168,7 @@ def test_a_missed_patch_is_made_good(bare: BarePage, state: BenchState) -> None:
 
 
 def test_sides_are_written_on_every_plane_and_switch(bare: BarePage) -> None:
-    """L and R stand on axial, coronal and projection, swap with the display, and name the side of the sagittal plane."""
+    """L and R stand on axial, coronal and projection, swap with the display, and name the sagittal plane's side."""
 
     def at(plane: str) -> list[str]:
         film = bare.page.locator(f".bs-film[data-plane={plane}], .bs-projection" if plane == "projection"
