@@ -35,7 +35,9 @@ def explanation_text(case: Case, explanation: Explanation) -> str:
     hit = explanation.damage[explanation.damage["share"] >= 0.02].head(SHOWN_ROWS)
     for row in hit.itertuples():
         word = "lost" if row.kind == "region" else "severed"
-        lines.append(f"  {row.share:5.2f} ({row.low:.2f}-{row.high:.2f}) {word:8} {row.name}, {row.side} [{row.element}]")
+        lines.append(
+            f"  {row.share:5.2f} ({row.low:.2f}-{row.high:.2f}) {word:8} {row.name}, {row.side} [{row.element}]"
+        )
     lines += ["", "Accounts", "--------"]
     for rank, account in enumerate(explanation.accounts[:SHOWN_ACCOUNTS], start=1):
         lines += _account_lines(rank, account)
@@ -50,7 +52,7 @@ def explanation_text(case: Case, explanation: Explanation) -> str:
 def _account_lines(rank: int, account: Account) -> list[str]:
     lines = [f"{rank}. {account.title}",
              f"   {account.kind}: posterior {account.posterior:.3f} ({account.words}); "
-             f"odds against the plain cortical reading {account.odds_vs_cortical:.2g}"]  # fmt: skip
+             f"odds compared with the plain cortical reading {account.odds_vs_cortical:.2g}"]  # fmt: skip
     for label, signs in (("explains", account.explains), ("leaves", account.leaves),
                          ("predicts in vain", account.predicts_absent)):  # fmt: skip
         if signs:
