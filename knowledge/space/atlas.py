@@ -17,6 +17,7 @@ from byway.knowledge.space.build import build_geometry, geometry_hash
 from byway.knowledge.space.cache import load_entry, store_entry
 from byway.knowledge.space.geometry import Geometry
 from byway.knowledge.space.grid import TEMPLATE_GRID
+from byway.knowledge.space.reuse import Earlier
 
 __all__ = ["Template", "load_template", "spread_by_key"]
 
@@ -128,13 +129,20 @@ def spread_by_key(graph: Graph) -> dict[str, float]:
     return spread
 
 
-def load_template(graph: Graph | None = None, *, progress: bool = True) -> Template:
+def load_template(
+    graph: Graph | None = None, *, near: tuple[Graph, Template] | None = None, store: bool = True, progress: bool = True
+) -> Template:
     """Geometry of the template for a graph, from the cache where the same was built before.
 
     Parameters
     ----------
     graph : Graph, optional
         Where regions, segments and spreads come from; the curated graph if left out.
+    near : pair of Graph and Template, optional
+        A graph that differs little, and its template: what has not changed is taken from there. By default the
+        curated graph's, where the cache holds it.
+    store : bool
+        Whether to put what is built into the cache.
     progress : bool
         Whether a build shows a progress bar.
 
@@ -145,14 +153,32 @@ def load_template(graph: Graph | None = None, *, progress: bool = True) -> Templ
     graph = graph or load_graph()
     spread = spread_by_key(graph)
     digest = geometry_hash(graph.regions, graph.segments, spread)
-    name = f"geometry-{digest}"
-    stored = load_entry(name)
-    template = _unpack(*stored, digest) if stored else None
+    template = _stored(digest)
     if template is None:
-        geometry, core_lines = build_geometry(graph.regions, graph.segments, spread, progress=progress)
-        store_entry(name, *_packed(geometry, core_lines))
+        geometry, core_lines = build_geometry(
+            graph.regions, graph.segments, spread, progress=progress, earlier=_earlier(*(near or _curated()))
+        )
+        if store:
+            store_entry(f"geometry-{digest}", *_packed(geometry, core_lines))
         template = Template(geometry, core_lines)
     return template
+
+
+def _stored(digest: str) -> Template | None:
+    stored = load_entry(f"geometry-{digest}")
+    return _unpack(*stored, digest) if stored else None
+
+
+def _curated() -> tuple[Graph, Template | None]:
+    graph = load_graph()
+    return graph, _stored(geometry_hash(graph.regions, graph.segments, spread_by_key(graph)))
+
+
+def _earlier(graph: Graph, template: Template | None) -> Earlier | None:
+    """What a template can lend: nothing where a part of it is not the template's own."""
+    if template is None or set(template.geometry.anatomy) - {"template"}:
+        return None
+    return Earlier(graph.regions, graph.segments, template.geometry, template.core_lines)
 
 
 def _packed(

@@ -17,11 +17,12 @@ from byway.knowledge.space.courses import is_mirror_image_of_itself, pull_course
 from byway.knowledge.space.geometry import Geometry
 from byway.knowledge.space.grid import TEMPLATE_GRID
 from byway.knowledge.space.parcels import grow_parcels
+from byway.knowledge.space.reuse import Earlier
 from byway.knowledge.space.template import template_hash
 
-__all__ = ["BUILD_VERSION", "build_geometry", "geometry_hash"]
+__all__ = ["BUILD_VERSION", "build_geometry", "geometry_hash", "sketch_segment"]
 
-BUILD_VERSION = 3
+BUILD_VERSION = 5
 """Raised whenever the method changes, so that caches of older builds are not used."""
 
 _MIRROR = np.array([-1.0, 1.0, 1.0])
@@ -53,6 +54,7 @@ def build_geometry(
     spread_mm: Mapping[str, float],
     *,
     progress: bool = True,
+    earlier: Earlier | None = None,
 ) -> tuple[Geometry, dict[str, NDArray[np.float32]]]:
     """Build parcels and bundles of every element on both sides.
 
@@ -64,6 +66,8 @@ def build_geometry(
         Between-subject spread of each, standard deviation in mm.
     progress : bool
         Whether to show a progress bar.
+    earlier : Earlier, optional
+        An earlier build by the same method, which lends what has not changed.
 
     Returns
     -------
@@ -74,18 +78,61 @@ def build_geometry(
     """
     bar = tqdm(total=len(segments) + 10, desc="template geometry", unit="step", disable=not progress)
     with bar:
-        parcels = grow_parcels(regions)
+        lent = earlier.parcels(regions) if earlier is not None else None
+        parcels = grow_parcels(regions) if lent is None else lent
         bar.update(10)
-        lines = {key: _core_line(segment) for key, segment in segments.items()}
+        lines = _core_lines(segments, earlier)
+        loans = _loans(segments, lines, parcels, earlier)
         bundles: dict[str, Bundle] = {}
         core_lines: dict[str, NDArray[np.float32]] = {}
         for segment in segments.values():
-            for element, line, bundle in _both_sides(segment, lines, segments, parcels, bundles):
+            elements = loans.get(segment.key)
+            if elements is None:
+                lines[segment.key] = _core_line(segment)  # a lent line is rounded
+                elements = _both_sides(segment, lines, segments, parcels, bundles)
+            for element, line, bundle in elements:
                 core_lines[element] = line.astype(np.float32)
                 bundles[element] = bundle
             bar.update()
     geometry = _pack(parcels, bundles, spread_mm, geometry_hash(regions, segments, spread_mm))
     return geometry, core_lines
+
+
+_Elements = list[tuple[str, NDArray[np.floating], Bundle]]
+
+
+def _core_lines(segments: Mapping[str, Segment], earlier: Earlier | None) -> dict[str, NDArray[np.float64]]:
+    if earlier is None:
+        return {key: _core_line(segment) for key, segment in segments.items()}
+    return {
+        key: earlier.line(segment) if earlier.same_course(segment) else _core_line(segment)
+        for key, segment in segments.items()
+    }
+
+
+def _loans(
+    segments: Mapping[str, Segment],
+    lines: Mapping[str, NDArray[np.float64]],
+    parcels: Mapping[str, NDArray[np.int32]],
+    earlier: Earlier | None,
+) -> dict[str, _Elements]:
+    """Elements of the segments that an earlier build can lend."""
+    if earlier is None:
+        return {}
+    old_lines = {key: earlier.line(segment) for key, segment in earlier.segments.items()}
+    loans: dict[str, _Elements] = {}
+    made: set[str] = set()
+    for key, segment in segments.items():
+        elements = None
+        if earlier.same_course(segment):
+            now = (_meeting(key, False, lines, segments), _meeting(key, True, lines, segments))
+            then = (_meeting(key, False, old_lines, earlier.segments), _meeting(key, True, old_lines, earlier.segments))
+            elements = earlier.lent(segment, now, then, parcels, made)
+        if elements is None:
+            made.add(key)
+        else:
+            loans[key] = [*elements]
+    return loans
 
 
 def _core_line(segment: Segment) -> NDArray[np.float64]:
@@ -159,7 +206,7 @@ def _both_sides(
     segments: Mapping[str, Segment],
     parcels: Mapping[str, NDArray[np.int32]],
     bundles: Mapping[str, Bundle],
-) -> list[tuple[str, NDArray[np.float64], Bundle]]:
+) -> _Elements:
     key, line = segment.key, lines[segment.key]
     endings = (
         _ending(segment, False, lines, segments, parcels, bundles),
@@ -208,3 +255,36 @@ def _pack(
         anatomy=("template",) * len(elements),
         content_hash=content_hash,
     )
+
+
+def sketch_segment(
+    segment: Segment, parcels: Mapping[str, NDArray[np.int32]], *, streamlines: int = 40
+) -> tuple[NDArray[np.float64], Bundle | None]:
+    """A segment by itself, thin and at once, while its waypoints are in the hand.
+
+    Parameters
+    ----------
+    segment : Segment
+        Its record; on the left or the midline.
+    parcels : mapping of element id to (n,) int32
+        Voxels of the regions at its ends; an end that is missing stays in white matter.
+    streamlines : int
+        How many; 0 for the core line alone.
+
+    Returns
+    -------
+    line : (n, 3) float
+        The core line that a build would give, MNI mm.
+    bundle : Bundle or None
+        Streamlines about it; what other segments do at its ends is left out.
+    """
+    line = _core_line(segment)
+    if streamlines == 0:
+        return line, None
+    places = {segment.from_place.partition("@")[0], segment.to_place.partition("@")[0]}
+    nowhere = {f"{place}@{side}": np.empty(0, np.int32) for place in places for side in ("left", "right")}
+    known = {**nowhere, **parcels}
+    alone = ({segment.key: line}, {segment.key: segment})
+    endings = (_ending(segment, False, *alone, known, {}), _ending(segment, True, *alone, known, {}))
+    rng = np.random.default_rng(zlib.crc32(segment.key.encode()))
+    return line, make_bundle(line, segment.radius_mm, endings, rng, streamlines)

@@ -22,6 +22,9 @@ _GOLDEN_ANGLE = np.pi * (3.0 - np.sqrt(5.0))
 _FRINGE = 1.6
 _FAN_MM = 36.0
 _FAN_SHARE = 0.38
+_FAN_LEAST_MM = 4.0
+_FAN_PER_SPREAD = 1.6
+_STRAIGHT = 1.2
 _NEAR_COST = 22.0
 _BEND_MM = 20.0
 _BEND_SHARE = 0.4
@@ -187,8 +190,7 @@ def _fanned(
     targets_mm: NDArray[np.float64],
     rng: np.random.Generator,
 ) -> list[tuple[int, NDArray[np.float64]]]:
-    along = arc_length(core_line)
-    leave = int(np.searchsorted(along, along[-1] - min(_FAN_MM, _FAN_SHARE * along[-1])))
+    leave = _fan_start(core_line, targets_mm)
     reach = reach_from(core_line[leave:])
     cost = reach.cost_to(targets_mm)
     near = cost <= cost.min() + _NEAR_COST if np.isfinite(cost).any() else np.ones(len(cost), bool)
@@ -203,6 +205,22 @@ def _fanned(
         fade = fade**2 * (3.0 - 2.0 * fade)
         fans.append((len(line) - door, way + fade[:, None] * (line[door] - core_line[door])))
     return fans
+
+
+def _fan_start(core_line: NDArray[np.float64], targets_mm: NDArray[np.float64]) -> int:
+    """Point of the core line at which the fan may begin: farther from its end the wider the targets lie about it.
+
+    Only the part of the course that leads straight at the end may fan: round a bend, ways to the targets would cut it
+    short.
+    """
+    along = arc_length(core_line)
+    to_end = along[-1] - along
+    chord = np.linalg.norm(core_line - core_line[-1], axis=1)
+    spread = float(np.median(np.linalg.norm(targets_mm - core_line[-1], axis=1)))
+    longest = min(_FAN_MM, _FAN_SHARE * along[-1], _FAN_LEAST_MM + _FAN_PER_SPREAD * spread)
+    bent = (to_end > _STRAIGHT * chord) & (to_end > _FAN_LEAST_MM)
+    first = int(np.flatnonzero(bent)[-1]) + 1 if bent.any() else 0
+    return min(max(first, int(np.searchsorted(along, along[-1] - longest))), len(core_line) - 2)
 
 
 def _eased(line: NDArray[np.float64], at: int) -> NDArray[np.float64]:

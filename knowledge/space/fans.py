@@ -24,7 +24,7 @@ from byway.knowledge.space.template import brain_mask, template_volume
 __all__ = ["Reach", "reach_from"]
 
 _STEP = 2
-_LIMIT = 110.0
+_LIMIT = 75.0
 _DOORS = 48
 _TRUNK_PRICE = 0.8
 _SMOOTHING_POINTS = 6.0
