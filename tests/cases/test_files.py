@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from pathlib import Path
+from typing import get_args
 
 import jsonschema
 import pytest
@@ -13,6 +14,7 @@ from byway.knowledge.atomic import fingerprint
 from byway.knowledge.cases.files import dump_case, inside, read_case, write_case
 from byway.knowledge.cases.model import CaseFile, case_schema
 from byway.knowledge.faults import CaseError
+from byway.knowledge.graph.loading import load_graph
 
 VIGNETTES = json.loads((Path(__file__).parents[1] / "data" / "vignettes.json").read_text())
 SCHEMA = Path(__file__).parents[2] / "knowledge" / "cases" / "case.schema.json"
@@ -88,3 +90,10 @@ def test_volumes_stay_inside(name: str, tmp_path: Path) -> None:
     """A file name that leads out of the case folder is refused."""
     with pytest.raises(CaseError, match="inside the case folder"):
         inside(tmp_path, name)
+
+
+def test_every_cause_has_its_perilesional_prior() -> None:
+    """The causes of case.yaml are the members of the norm that the perilesional prior is read from."""
+    prior = load_graph().norms["scenario_prior_perilesional"].value
+    assert isinstance(prior, dict)
+    assert set(get_args(CaseFile.model_fields["cause"].annotation)) == set(prior)
