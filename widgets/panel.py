@@ -73,6 +73,11 @@ class Panel(anywidget.AnyWidget):
             graph = self.state.explanation.reckoning.prepared.graph
         return graph
 
+    def draws_of(self, lesion: Any) -> Any:
+        """The damage ensemble of another lesion, by variant; None where the state has no geometry."""
+        ask = getattr(self.state.science, "draws_of", None)
+        return ask(lesion) if ask is not None else None
+
     def when(self, names: list[str], call: Callable[[], None]) -> None:
         """Call when any named trait of the state moves, until the panel is closed."""
 

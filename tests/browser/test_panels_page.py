@@ -36,7 +36,8 @@ NAMELESS = """() => [...document.querySelectorAll('button, input, select, [role=
     || document.getElementById(e.getAttribute('aria-labelledby'))?.textContent;
   return !label || !label.trim(); }).map((e) => e.outerHTML)"""
 LOOSE = r"""() => {
-  const told = '[data-name], option, output, .bw-cautions, .bw-necks, .bw-plain-list, .bw-prof-key, thead, .bw-route-facts';
+  const told = '[data-name], option, output, .bw-cautions, .bw-necks, .bw-plain-list, .bw-prof-key, thead,'
+    + '.bw-route-facts';
   const out = [];
   const walk = document.createTreeWalker(document.querySelector('.bw-body'), NodeFilter.SHOW_TEXT);
   while (walk.nextNode()) {

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import Any, ClassVar
 
 import traitlets as t
@@ -55,7 +56,7 @@ class SteadyPanel(Panel):
             self.spared = [{**self._spared(row), "asked": row["function"] in asked} for row in rows]
             self.stamp += 1
 
-    def _spared(self, row: dict[str, Any]) -> dict[str, Any]:
+    def _spared(self, row: Mapping[Any, Any]) -> dict[str, Any]:
         graph = self.graph
         claims = [graph.claims[key] for key in row["claims"]]
         return {"function": row["name"], "element": element_words(graph, row["element"]), "words": row["words"],
@@ -71,11 +72,9 @@ class SteadyPanel(Panel):
         explanation = self.state.explanation
         if explanation is None:
             return None
-        masks = None
-        if hasattr(self.state.science, "draws_of"):
-            lesion = self.state.lesion
-            masks = {self.words[name]: self.state.science.draws_of(imagined(lesion, by))
-                     for name, by in (("mask_larger", EDGE_MM), ("mask_smaller", -EDGE_MM))}  # fmt: skip
+        edges = {"mask_larger": EDGE_MM, "mask_smaller": -EDGE_MM}
+        drawn = {self.words[name]: self.draws_of(imagined(self.state.lesion, by)) for name, by in edges.items()}
+        masks = drawn if None not in drawn.values() else None
         self.result = sensitivity(explanation, masks=masks, progress=self._moved)
         table = self.result.table
         with self.hold_sync():

@@ -19,7 +19,7 @@ STAGES = ("acute", "subacute", "chronic")
 MOST_GROWTH_MM = 10.0
 MOST_ROWS = 14
 LEAST_CHANGE = 0.005
-NOTHING = {"growth_mm": 0.0, "oedema_share": 1.0, "stage": "", "restored": [], "severed": []}
+NOTHING: dict[str, Any] = {"growth_mm": 0.0, "oedema_share": 1.0, "stage": "", "restored": [], "severed": []}
 
 
 class WhatIfPanel(Panel):
@@ -86,8 +86,8 @@ class WhatIfPanel(Panel):
         if asked["stage"] not in ("", *STAGES):
             raise BywayError(Fault("what-if", "stage", str(asked["stage"]), ", ".join(STAGES)))
         draws = None
-        if (growth or oedema != 1.0) and self.can_draw:
-            draws = self.state.science.draws_of(imagined(self.state.lesion, growth, oedema))
+        if growth or oedema != 1.0:
+            draws = self.draws_of(imagined(self.state.lesion, growth, oedema))
         return Change(str(asked["stage"]) or None, draws, tuple(asked["restored"]), tuple(asked["severed"]))
 
 
