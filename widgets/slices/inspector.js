@@ -1,5 +1,5 @@
 // Beside the films: compartments, and what can be done to what is drawn.
-import { h, keep, mark, say } from "../front/kit.js";
+import { h, keep, mark, setNumber } from "../front/kit.js";
 import { slider } from "./controls.js";
 import { icon } from "./icons.js";
 import { COMPARTMENTS, swatch } from "./looks.js";
@@ -14,7 +14,7 @@ function makeCompartment(view, n) {
     onchange: () => change({ name: name.value }) });
   const kind = h("select", { "aria-label": words.compartment_kind, onchange: () => change({ kind: kind.value }) },
     ["core", "oedema", "other"].map((k) => h("option", { value: k }, words[`kind_${k}`])));
-  const volume = h("span", { class: "bs-ml bw-number", "data-name": `lesion.compartments[${n}].volume_ml` });
+  const volume = h("span", { class: "bs-ml bw-number" });
   const effect = slider(words.effect, [0, 1, 0.05], 1, (v) => v.toFixed(2), (v, last) => last && change({ effect: v }));
   const pick = h("button", { type: "button", class: "bs-pick", role: "radio", onclick: () => look.set({ compartment: n }) },
     swatch(COMPARTMENTS[n]));
@@ -29,8 +29,10 @@ function makeCompartment(view, n) {
     if (document.activeElement !== name) name.value = s.name;
     kind.value = s.kind;
     effect.show(s.effect);
-    say(volume, ml(view.store.ml[n] || 0));
-    mark(volume, "data-value", view.store.ml[n] || 0);
+    // The lesion leaves empty compartments out, so the number's name counts the others.
+    const drawn = view.store.ml[n] > 0;
+    const place = view.store.ml.slice(0, n).filter((v) => v > 0).length;
+    setNumber(volume, `lesion.compartments[${place}].volume_ml`, drawn ? view.store.ml[n] : null, ml(view.store.ml[n] || 0));
     mark(pick, "aria-label", s.name);
     mark(pick, "aria-checked", look.compartment === n ? "true" : "false");
     mark(pick, "tabindex", look.compartment === n ? "0" : "-1");

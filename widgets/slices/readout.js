@@ -1,5 +1,5 @@
 // Below the films: where the pointer (or else the crosshair) is, what the scan says there, and which elements lie there.
-import { glyph, h, keep, mark, percent, say } from "../front/kit.js";
+import { glyph, h, keep, mark, percent, say, setNumber } from "../front/kit.js";
 import { elementOf } from "./overlays.js";
 
 const MOST = 7;
@@ -22,9 +22,7 @@ export function readout(view) {
       h("span", { class: "bw-side", title: words[e.side] }, words[`${e.side}_short`] || ""), share));
     item.change = () => {
       const lost = store.share ? store.share[position] : NaN;
-      mark(share, "data-name", `damage.share[${e.id}]`);
-      mark(share, "data-value", Number.isNaN(lost) ? null : lost);
-      say(share, percent(lost));
+      setNumber(share, `damage/${e.id}/share`, lost, percent(lost));
       mark(share, "title", words[e.segment ? "severed_share" : "lost_share"]);
     };
     return item;
