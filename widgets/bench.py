@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import importlib
+import os
 from pathlib import Path
 from typing import Any, ClassVar, get_args
 
@@ -24,6 +25,7 @@ from byway.widgets.hits import HitsPanel
 from byway.widgets.panel import Panel
 from byway.widgets.slices import SlicesPanel
 from byway.widgets.state import BenchState
+from byway.widgets.state.following import Following
 from byway.widgets.state.live import LiveScience
 from byway.widgets.words import section, word
 
@@ -37,6 +39,7 @@ DECK = {
     "steady": ("byway.widgets.accounts.steady", "SteadyPanel"),
     "graph": ("byway.widgets.graph.panel", "GraphPanel"),
     "head": ("byway.widgets.head.panel", "HeadPanel"),
+    "notes": ("byway.widgets.notes.panel", "NotesPanel"),
 }
 """Panels below the main four, made when first asked for: some load a drawing library that takes a second."""
 
@@ -149,6 +152,7 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         super().__init__([self.head, grid, self.tabs, self._place])
         self.add_class("byway-bench")
         self.show(self.tabs.shown)
+        self.state.observe(self._show_place, "place")
 
     def show(self, name: str) -> Any:
         """Show one of the further views, and return its panel.
@@ -156,7 +160,7 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         Parameters
         ----------
         name : str
-            ``profile``, ``routes``, ``whatif``, ``own``, ``steady``, ``graph`` or ``head``.
+            ``profile``, ``routes``, ``whatif``, ``own``, ``steady``, ``graph``, ``head`` or ``notes``.
         """
         if name not in DECK:
             raise BywayError(Fault("view", "bench", name, ", ".join(DECK)))
@@ -167,6 +171,11 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         self._place.children = (self.deck[name],)
         return self.deck[name]
 
+    def _show_place(self, _: Any) -> None:
+        """Show the place of the graph that a panel asks for."""
+        if self.state.place:
+            self.show("graph").centre = self.state.place
+
     @property
     def explanation(self) -> Any:
         """What the accounts panel shows: the explanation of the case as it stands."""
@@ -174,6 +183,7 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
 
     def close(self) -> None:
         """Close every panel and stop the work in the background."""
+        self.state.unobserve(self._show_place, "place")
         for panel in (self.head, self.slices, self.hits, self.findings, self.accounts, *self.deck.values()):
             panel.close()
         self.state.close()
@@ -190,7 +200,9 @@ def middle_mm(lesion: Lesion) -> tuple[float, float, float]:
     return (float(x), float(y), float(z))
 
 
-def bench(case: Case | str | Path, *, draws: int = 200, settle: bool = True) -> Bench:
+def bench(
+    case: Case | str | Path, *, draws: int = 200, settle: bool = True, author: str | None = None, follow: bool = True
+) -> Bench:
     """Open a case on the bench.
 
     Parameters
@@ -201,6 +213,11 @@ def bench(case: Case | str | Path, *, draws: int = 200, settle: bool = True) -> 
         Virtual anatomies that intervals and accounts are averaged over.
     settle : bool
         Whether to wait for the accounts, so that the bench opens already explained.
+    author : str, optional
+        Who sits here, as the team calls them (initials); by default the environment's ``BYWAY_AUTHOR``.
+    follow : bool
+        Whether to journal what is done, bring back what a lost kernel had not saved, and take in what others write to
+        the case folder. Without it the folder is touched only by saving.
 
     Returns
     -------
@@ -214,6 +231,9 @@ def bench(case: Case | str | Path, *, draws: int = 200, settle: bool = True) -> 
     """
     opened = case if isinstance(case, Case) else open_case(case)
     state = BenchState(opened, LiveScience(desk_of(opened), draws=draws))
+    state.author = os.environ.get("BYWAY_AUTHOR", "") if author is None else author
+    if follow and opened.path.is_file():
+        Following(state).start().recover()
     state.cursor_mm = middle_mm(state.lesion)
     if settle:
         state.settle()

@@ -46,6 +46,27 @@ class Course:
     findings: pd.DataFrame = field(repr=False)
     accounts: pd.DataFrame = field(repr=False)
 
+    def number(self, name: str) -> float:
+        """A number by the name that a screen shows it under.
+
+        Parameters
+        ----------
+        name : str
+            ``course/<damage|functions|accounts>/<key>/<visit>``, or ``course/signs/<sign>@<side>/<visit>`` for what
+            the full model expects.
+
+        Raises
+        ------
+        KeyError
+            Nothing has that name.
+        """
+        _, table, key, visit = name.split("/")
+        if table == "signs":
+            sign, _, side = key.rpartition("@")
+            return float(self.findings[f"{visit} expected"].to_dict()[sign, side])
+        tables = {"damage": self.damage, "functions": self.functions, "accounts": self.accounts}
+        return float(tables[table][visit].to_dict()[key])
+
 
 def course_of_case(case: Case, *, desk: Desk | None = None, draws: int = 200, seed: int = 0) -> Course:
     """Explain a case at each of its time points, and set the results side by side.

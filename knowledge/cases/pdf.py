@@ -92,7 +92,7 @@ def write_pdf(case: Case, explanation: Explanation, path: Path, **choices: Any) 
 
 
 def _head(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
-    spec, lesion = f.case.spec, f.case.lesion
+    spec, lesion = f.case.spec, f.lesion
     invented = [("b", w["invented"] + " ")] if spec.invented else []
     line = (f"{spec.stage} {spec.cause.replace('_', ' ')} · {w['handedness']} {spec.person.handedness} · "
             f"{w['age_band']} {spec.person.age_band} · {w['made']} {f.made}")  # fmt: skip

@@ -19,6 +19,7 @@ from byway.knowledge.cases.standing import team_standing
 from byway.knowledge.cases.wording import anatomy_words
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.records import Claim, Source
+from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.reasoning.accounts import Account
 from byway.knowledge.reasoning.explain import Explanation
 from byway.knowledge.space.template import template_volume
@@ -56,6 +57,7 @@ class ReportFacts:
     """All that a report prints, in order; rows are plain mappings with the names of the API."""
 
     case: Case
+    lesion: Lesion
     explanation: Explanation
     full: bool
     title: str
@@ -77,7 +79,12 @@ class ReportFacts:
 
 
 def facts_of(
-    case: Case, explanation: Explanation, *, notes: Iterable[Note] | None = None, full: bool = True
+    case: Case,
+    explanation: Explanation,
+    *,
+    notes: Iterable[Note] | None = None,
+    full: bool = True,
+    lesion: Lesion | None = None,
 ) -> ReportFacts:
     """Gather what a report says.
 
@@ -91,7 +98,10 @@ def facts_of(
         Notes to print, in threads; all current ones by default.
     full : bool
         False gives the one-page summary: lesion, profile, leading accounts, next tests; notes only where chosen.
+    lesion : Lesion, optional
+        The lesion to draw, where it is not the saved one.
     """
+    lesion = lesion if lesion is not None else case.lesion
     graph = explanation.reckoning.prepared.graph
     pages = Pages(case.folder)
     if notes is None:
@@ -105,10 +115,11 @@ def facts_of(
     titles = {row["account"]: row["title"] for row in team}
     return ReportFacts(
         case=case,
+        lesion=lesion,
         explanation=explanation,
         full=full,
         title=case.spec.title or case.folder.name,
-        views=slice_views(template_volume("t1"), case.lesion, extra=2 if full else 0),
+        views=slice_views(template_volume("t1"), lesion, extra=2 if full else 0),
         hit=rows_of(explanation.damage[explanation.damage["share"] >= LEAST_SHARE].head(SHOWN_HITS[full])),
         profile=rows_of(_profile(explanation).head(SHOWN_PROFILE[full])),
         accounts=accounts,

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.geometry import Geometry
-from byway.widgets.state.casefiles import load_lesion, load_scan, save_drawing, unsaved_edits
+from byway.widgets.state.casefiles import findings_spec, load_lesion, load_scan, save_drawing, unsaved_edits
 from byway.widgets.state.drawing import Change, Drawing, Settings, Style
 from byway.widgets.state.edits import LEANS_ON_SCANS, apply_edit, bytes_edit
 from byway.widgets.state.elements import ElementMap
@@ -44,6 +44,10 @@ class BenchState(t.HasTraits):
     ``findings_seq``   ``findings``
     ``case_seq``       ``case`` (another case, or its person, stage or cause changed)
     ``scans_seq``      ``scans``
+    ``graph_seq``      ``science`` with another graph, and perhaps another geometry (an edit, another model)
+    ``pages_seq``      notes, own accounts, standings or versions in the case folder, whoever wrote them
+    ``place``          a key of the graph that a panel asks to be shown, or ``""``
+    ``author``         who sits here, as the team calls them, or ``""``
     ``selected``       the element id ``key@side`` that panels point out, or ``""``
     ``cursor_mm``      the crosshair, MNI mm
     ``busy``           whether accounts are on their way
@@ -68,6 +72,10 @@ class BenchState(t.HasTraits):
     findings_seq = t.Int(0)
     case_seq = t.Int(0)
     scans_seq = t.Int(0)
+    graph_seq = t.Int(0)
+    pages_seq = t.Int(0)
+    place = t.Unicode("")
+    author = t.Unicode("")
     selected = t.Unicode("")
     cursor_mm = t.Tuple(t.Float(), t.Float(), t.Float(), default_value=(0.0, 0.0, 0.0))
     busy = t.Bool(False)
@@ -86,6 +94,7 @@ class BenchState(t.HasTraits):
         self.ensemble: Any = None
         self.explanation: Any = None
         self.case: Any = None
+        self.following: Any = None
         self.findings: tuple[Any, ...] = ()
         self.drawing = Drawing()
         self._lesion: Lesion | None = None
@@ -111,6 +120,55 @@ class BenchState(t.HasTraits):
         self.case = case
         self.case_seq += 1
         self._note({"kind": "case", "spec": case.spec.model_dump(mode="json")})
+        self._rest()
+
+    def adopt(self, case: Any) -> None:
+        """Take in what somebody else wrote to the case; the drawing starts anew only where the lesion changed."""
+        if case.spec.lesion != self.case.spec.lesion:
+            self.open(case)
+            return
+        self.case = case
+        graph = self.science.graph
+        self.findings = tuple(case.findings(graph)) if graph is not None else ()
+        self.case_seq += 1
+        self.findings_seq += 1
+        self._rest()
+
+    def save_case(self) -> None:
+        """Write the findings and what is known of the person to case.yaml.
+
+        Raises
+        ------
+        BywayError
+            If there is no case.
+        CaseError
+            If somebody changed case.yaml in between; both versions are kept.
+        """
+        if self.case is None:
+            raise BywayError(Fault("no-case", "save", "no case", "", "open a case first"))
+        self.case = self.case.with_spec(findings=findings_spec(self.findings)).save()
+        self.case_seq += 1
+        self._note({"kind": "saved_case"})
+
+    def use_science(self, science: Science, case: Any = None) -> None:
+        """Reason on another graph, about the same drawing and findings.
+
+        Parameters
+        ----------
+        science : Science
+            What answers from now on.
+        case : Case, optional
+            The case with what changed with the graph (its list of overlays).
+        """
+        other_places = science.geometry is not self.geometry
+        self.science = science
+        if case is not None:
+            self.case = case
+        if other_places:
+            self.__dict__.pop("elements", None)
+        self.graph_seq += 1
+        self.damage = science.damage(self.lesion)
+        self.damage_seq += 1
         self._rest()
 
     @property
@@ -336,6 +394,8 @@ class BenchState(t.HasTraits):
 
     def close(self) -> None:
         """Stop the work in the background."""
+        if self.following is not None:
+            self.following.close()
         self.resting.close()
 
 

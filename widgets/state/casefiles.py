@@ -19,7 +19,7 @@ from byway.knowledge.space.grid import SPACE, TEMPLATE_GRID
 from byway.widgets.state.drawing import Drawing
 from byway.widgets.state.scans import Scan, quantised
 
-__all__ = ["EFFECT_MAP", "load_lesion", "load_scan", "save_drawing", "unsaved_edits"]
+__all__ = ["EFFECT_MAP", "findings_spec", "load_lesion", "load_scan", "save_drawing", "unsaved_edits"]
 
 EFFECT_MAP = f"space-{SPACE}_desc-effect_map.nii.gz"
 
@@ -90,6 +90,12 @@ def _write_map(path: Path, volume: NDArray[np.float32]) -> None:
     image.set_sform(TEMPLATE_GRID.affine, "mni")
     image.set_qform(TEMPLATE_GRID.affine, "mni")
     write_bytes(path, gzip.compress(image.to_bytes(), 4, mtime=0))
+
+
+def findings_spec(findings: Iterable[Any]) -> list[dict[str, Any]]:
+    """Findings as case.yaml words them."""
+    return [{"sign": f.sign, "side": f.side, "grade": f.grade, "test": f.test, "date": f.date, "by": f.by}
+            for f in findings]  # fmt: skip
 
 
 def unsaved_edits(entries: Iterable[Mapping[str, Any]], author: str) -> list[dict[str, Any]]:
