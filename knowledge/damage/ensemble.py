@@ -11,8 +11,9 @@ from numpy.typing import NDArray
 
 from byway.knowledge.damage.anatomies import Anatomies, normal_levels
 from byway.knowledge.damage.index import DamageIndex
+from byway.knowledge.damage.nearby import NearSample
 from byway.knowledge.damage.point import effect_voxels
-from byway.knowledge.damage.sample import CELL, Sample
+from byway.knowledge.damage.sample import Sample
 from byway.knowledge.damage.words import VARIANTS, EffectWords
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
@@ -21,7 +22,6 @@ __all__ = ["VARIANTS", "Ensemble", "EnsembleSettings", "EnsembleStoppedError", "
 
 Progress = Callable[[int, int], object]
 _SHIFTS = 7  # boundary shifts that stand for the normal distribution of the boundary's error
-_REPORT_EVERY = 10
 
 
 class EnsembleStoppedError(Exception):
@@ -150,9 +150,10 @@ def ensemble(
     settings : EnsembleSettings
         What varies.
     sample : Sample, optional
-        Points to reckon on; the index's own (48 streamlines, every second point, 400 voxels) where None.
+        Points to reckon on; the index's own (100 streamlines, every second point, 300 voxels) where None.
     progress : callable, optional
-        Called with draws done and draws in all; when it returns ``False`` the work stops.
+        Called now and then with draws done (the work so far, in draws) and draws in all; when it returns ``False``
+        the work stops.
 
     Returns
     -------
@@ -189,11 +190,17 @@ def ensemble(
         rim_effect=settings.rim_effect,
     )
     anatomies = Anatomies(settings.draws, settings.seed, settings.jitter_mm / side_mm, settings.jitter_deg)
-    near = _Near(sample, words, anatomies, settings.spread_scale / side_mm)
-    shift_of_draw = _shift_of_draw(settings, n_shifts)
-    met = near.words_of_groups(words, anatomies, shift_of_draw, sample, progress)
-    for name in VARIANTS:
-        draws[name][:, near.elements] = near.shares(words.decoded(met, name))
+    near = NearSample.build(sample, words, anatomies, settings.spread_scale / side_mm)
+    offset = near.offsets(anatomies, sample)
+    volumes = [np.pad(volume, near.pad).reshape(-1) for volume in words.volumes]
+    draws_of_shift = [np.flatnonzero(_shift_of_draw(settings, n_shifts) == shift) for shift in range(n_shifts)]
+    for part in near.parts():
+        met = part.words(volumes, draws_of_shift, offset)
+        for name in VARIANTS:
+            draws[name][:, part.elements] = part.shares(words.decoded(met, name))
+        done = settings.draws * part.last // max(1, len(near.base))
+        if progress is not None and progress(done, settings.draws) is False:
+            raise EnsembleStoppedError
     return Ensemble(index.geometry.element_ids, draws, settings)
 
 
@@ -204,86 +211,3 @@ def _shift_of_draw(settings: EnsembleSettings, n_shifts: int) -> NDArray[np.int6
     first = np.empty(half, np.int64)
     first[order] = np.arange(half) % n_shifts
     return np.concatenate([first, first])[: settings.draws]
-
-
-class _Near:
-    """The part of a sample that any draw could bring to the lesion, with indices into the padded box."""
-
-    def __init__(self, sample: Sample, words: EffectWords, anatomies: Anatomies, spread_scale: float) -> None:
-        spread = sample.spread_mm.astype(float) * spread_scale
-        reach = anatomies.reach(spread).astype(np.int32)[sample.mover_element]
-        self.pad = int(reach.max(initial=0))
-        box = np.array(words.volumes[0].shape)
-        # Whole cells first, then points.
-        from_box = sample.mover_centre - words.origin
-        margin = (reach + CELL // 2 + 1)[:, None]
-        near = np.asarray(((from_box >= -margin) & (from_box < box + margin)).all(axis=1))
-        kept = np.flatnonzero(near[sample.mover])
-        mover, place = sample.mover[kept], sample.voxels[kept] - words.origin
-        margin = reach[mover][:, None]
-        inside = ((place >= -margin) & (place < box + margin)).all(axis=1)
-        kept, mover, place = kept[inside], mover[inside], place[inside]
-        group = np.searchsorted(sample.group_offsets, kept, side="right") - 1
-        self.group_starts = np.flatnonzero(np.diff(group, prepend=-1))
-        groups = group[self.group_starts]
-        sizes = np.diff(self.group_starts, append=len(group))
-        # The voxels of parcels come first; each is a group of its own, and needs no OR.
-        self.alone = int(np.argmax(sizes != 1)) if (sizes != 1).any() else len(sizes)
-        self.group_weight = sample.group_weight[groups]
-        element = sample.group_element[groups]
-        self.element_starts = np.flatnonzero(np.diff(element, prepend=-1))
-        self.elements = element[self.element_starts]
-
-        used = np.zeros(len(near), bool)
-        used[mover] = True
-        self.mover = (np.cumsum(used) - 1)[mover]
-        self.mover_centre = sample.mover_centre[used]
-        self.mover_element = sample.mover_element[used]
-        self.mover_spread = spread[self.mover_element]
-        self.shape = tuple(int(n) for n in box + 2 * self.pad)
-        padded = place.astype(np.int64) + self.pad
-        self.base = (padded[:, 0] * self.shape[1] + padded[:, 1]) * self.shape[2] + padded[:, 2]
-
-    def words_of_groups(
-        self,
-        words: EffectWords,
-        anatomies: Anatomies,
-        shift_of_draw: NDArray[np.int64],
-        sample: Sample,
-        progress: Progress | None,
-    ) -> NDArray[np.unsignedinteger]:
-        """OR of the words that each group meets, (M, groups)."""
-        draws = anatomies.draws
-        move = anatomies.displacements(
-            self.mover_centre, self.mover_element, self.mover_spread, sample.partner, sample.shape
-        )
-        along_x, along_y, along_z = move.T.astype(np.int64)
-        offset = np.ascontiguousarray(((along_x * self.shape[1] + along_y) * self.shape[2] + along_z).T)
-        met = np.zeros((draws, len(self.group_starts)), words.volumes[0].dtype)
-        at = np.empty(len(self.base), np.int64)
-        found = np.empty(len(self.base), met.dtype)
-        done = 0
-        for shift, volume in enumerate(words.volumes):
-            flat = np.pad(volume, self.pad).reshape(-1)
-            for draw in np.flatnonzero(shift_of_draw == shift):
-                if len(at):
-                    # Every index is in range by construction; "clip" spares take the buffer of "raise".
-                    np.take(offset[draw], self.mover, out=at, mode="clip")
-                    at += self.base
-                    np.take(flat, at, out=found, mode="clip")
-                    met[draw, : self.alone] = found[: self.alone]
-                    if self.alone < len(self.group_starts):
-                        together = self.group_starts[self.alone :] - self.alone
-                        np.bitwise_or.reduceat(found[self.alone :], together, out=met[draw, self.alone :])
-                done += 1
-                report = progress is not None and (done % _REPORT_EVERY == 0 or done == draws)
-                if report and progress is not None and progress(done, draws) is False:
-                    raise EnsembleStoppedError
-        return met
-
-    def shares(self, effects: NDArray[np.float32]) -> NDArray[np.float32]:
-        """Weighted sums of the groups' D over each near element, (M, near elements)."""
-        if not len(self.elements):
-            return np.zeros((len(effects), 0), np.float32)
-        shares = np.add.reduceat(effects * self.group_weight, self.element_starts, axis=1)
-        return np.minimum(shares, np.float32(1))
