@@ -11,9 +11,9 @@ from byway.knowledge.atomic import fingerprint
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.loading import load_graph
-from byway.knowledge.space.atlas import Template, load_template
+from byway.knowledge.space.atlas import Template, load_template, spread_by_key
 
-__all__ = ["Desk", "desk_for"]
+__all__ = ["Desk", "desk_for", "desk_with"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -53,6 +53,26 @@ def desk_for(overlays: Iterable[Path] = (), *, progress: bool = True) -> Desk:
         Whether to show the building of the template's geometry (about a minute, once a machine).
     """
     return _desk(tuple((path, _print_of(path)) for path in overlays), progress)
+
+
+def desk_with(desk: Desk, graph: Graph) -> Desk:
+    """A desk with another graph, built from one that differs little.
+
+    Template and index are shared where both graphs have the same regions, segments and spreads; otherwise only what
+    changed is built (about a second a segment, several where a parcel changes). Nothing goes into the cache.
+
+    Parameters
+    ----------
+    desk : Desk
+        Not touched.
+    graph : Graph
+        The other graph.
+    """
+    old = desk.graph
+    if old.anatomy_hash == graph.anatomy_hash and spread_by_key(old) == spread_by_key(graph):
+        return Desk(graph, desk.template, desk.index)
+    template = load_template(graph, near=(old, desk.template), store=False, progress=False)
+    return Desk(graph, template, DamageIndex.build(template.geometry))
 
 
 def _print_of(path: Path) -> str | None:

@@ -34,7 +34,7 @@ class FindingsPanel(Panel):
     def __init__(self, source: Any) -> None:
         super().__init__(source)
         self.show_signs()
-        self.when(["case_seq"], self.show_signs)
+        self.when(["case_seq", "graph_seq"], self.show_signs)
         self.when(["findings_seq"], self.show_findings)
         self.when(["accounts_seq"], self.show_expected)
 

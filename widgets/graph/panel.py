@@ -34,7 +34,7 @@ class GraphPanel(Panel):
     def __init__(self, source: Any, centre: str = "") -> None:
         super().__init__(source, centre=centre)
         self.show_graph()
-        self.when(["case_seq"], self.show_graph)
+        self.when(["case_seq", "graph_seq"], self.show_graph)
         self.when(["selected"], self.follow)
         if not self.centre:
             self.follow()
