@@ -92,6 +92,7 @@ function render({ model, el }) {
   foot.append(h("p", { class: "bw-hits-uncharted" }, uncharted, " ", words.uncharted),
     h("p", {}, words.anatomy_note));
   let shown = { hit: [], near: [] };
+  let known = false; // once it was known, the line about uncharted matter keeps its place
 
   function draw() {
     const rows = readRows(model.get("elements"), model.get("values"));
@@ -106,8 +107,10 @@ function render({ model, el }) {
     empty.hidden = !table.hidden;
     say(empty, view.text ? fill(words.nothing_found, { text: view.text }) : words.nothing_hit);
     const share = model.get("uncharted_share");
-    foot.firstChild.hidden = share === null || share === undefined;
+    if (Number.isFinite(share)) known = true;
+    foot.firstChild.hidden = !known;
     setNumber(uncharted, "uncharted_share", share, percent(share));
+    mark(table, "data-old-clearance", model.get("clearance_waits"));
     mark(panel, "data-stamp", model.get("stamp"));
   }
 
@@ -127,7 +130,7 @@ function render({ model, el }) {
     setTimeout(() => say(copied, ""), 2500);
   }
 
-  return watch(model, ["elements", "values", "stamp", "selected", "uncharted_share"], draw);
+  return watch(model, ["elements", "values", "clearance_waits", "stamp", "selected", "uncharted_share"], draw);
 }
 
 export default { render };

@@ -11,24 +11,20 @@ from numpy.typing import NDArray
 __all__ = ["elements_of", "values_of"]
 
 
-def values_of(
-    damage: Any, interval: tuple[NDArray[np.floating], NDArray[np.floating]] | None = None
-) -> NDArray[np.float32]:
-    """(E, 5) float32: share, low, high, overlap in ml, clearance in mm; NaN where not known yet.
+def values_of(damage: Any, clearance_mm: NDArray[np.float32] | None = None) -> NDArray[np.float32]:
+    """(E, 5) float32: share, low, high, overlap in ml, clearance in mm; the interval is NaN: not known yet.
 
     Parameters
     ----------
     damage : Damage
         Point estimates.
-    interval : pair of (E,) arrays, optional
-        Bounds of the share.
+    clearance_mm : (E,) float32, optional
+        Shown in place of the damage's own clearance, which takes as long to reckon as all else together.
     """
     values = np.full((len(damage.share), 5), np.nan, np.float32)
     values[:, 0] = damage.share
-    if interval is not None:
-        values[:, 1], values[:, 2] = interval
     values[:, 3] = damage.overlap_ml
-    values[:, 4] = damage.clearance_mm
+    values[:, 4] = damage.clearance_mm if clearance_mm is None else clearance_mm
     return values
 
 
