@@ -10,8 +10,9 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.ndimage import label as components
 from scipy.ndimage import map_coordinates
-from scipy.sparse import csr_matrix
+from scipy.sparse import csr_matrix, diags
 from scipy.sparse.csgraph import dijkstra
+from scipy.sparse.linalg import cg
 
 from byway.knowledge.faults import Fault, ImageError
 from byway.knowledge.space.bundles import STREAMLINES
@@ -25,8 +26,6 @@ from byway.knowledge.space.template import brain_mask
 __all__ = ["OwnRegion", "own_membership", "region_from", "segment_from"]
 
 _INSIDE_SHARE = 0.5
-_TREES = 8
-_ROUGHNESS = 0.6
 _END_SHARE = 0.12
 _SMOOTHING_POINTS = 5.0
 _WHOLE = 1.0 + 1e-3
@@ -156,9 +155,9 @@ def segment_from(row: MappingRow, membership: NDArray[np.float32], course_mm: ND
 
     Notes
     -----
-    A map says where a tract may be and not how fibres run in it. The streamlines are cheapest paths through the
-    largest connected part of the map, the cost being one over probability times a random field drawn anew for each
-    of eight trees of paths, so that together they fill the map.
+    A map says where a tract may be and not how fibres run in it. The streamlines follow a potential flow through the
+    largest connected part of the map: potential 1 at one end, 0 at the other, and conductance equal to probability,
+    so that together they fill the map as a current would, and keep side by side.
     """
     pieces, count = components(membership >= row.threshold, np.ones((3, 3, 3)))
     if count == 0:
@@ -175,12 +174,8 @@ def segment_from(row: MappingRow, membership: NDArray[np.float32], course_mm: ND
     places = TEMPLATE_GRID.to_mm(np.argwhere(inside) + low)
     first, last = _end_zones(graph, places, np.asarray(course_mm, float))
     rng = np.random.default_rng(zlib.crc32(row.element.encode()))
-    lines = []
-    for _ in range(_TREES):
-        price = np.exp(_ROUGHNESS * rng.standard_normal(graph.count)) / probability[inside]
-        tree = _tree(graph, price, int(rng.choice(first)))
-        lines += [_path(tree, places, int(goal)) for goal in rng.choice(last, STREAMLINES // _TREES)]
-    streamlines = [line for line in lines if len(line) > 1]
+    chains = _currents(graph, probability[inside], first, last, rng)
+    streamlines = [_smoothed(places[chain]) for chain in chains if len(chain) > 1]
     if not streamlines:
         raise ImageError(
             Fault("own-map", row.where, f"{row.path.name} is too small for streamlines", "a map of some length")
@@ -206,21 +201,66 @@ def _end_zones(
     return order[-share:], order[:share]
 
 
-def _tree(graph: VoxelGraph, price: NDArray[np.float64], source: int) -> NDArray[np.int32]:
-    cost = graph.cost * 0.5 * (price[graph.first] + price[graph.second])
-    rows, columns = np.concatenate([graph.first, graph.second]), np.concatenate([graph.second, graph.first])
-    matrix = csr_matrix((np.concatenate([cost, cost]), (rows, columns)), shape=(graph.count, graph.count))
-    before: NDArray[np.int32] = dijkstra(matrix, indices=source, return_predecessors=True)[1]
-    return before
+def _currents(
+    graph: VoxelGraph,
+    probability: NDArray[np.floating],
+    first: NDArray[np.int64],
+    last: NDArray[np.int64],
+    rng: np.random.Generator,
+) -> list[NDArray[np.int64]]:
+    """Chains of nodes from the first zone to the last, drawn in proportion to the current between them."""
+    length = graph.cost.astype(float)
+    conductance = 0.5 * (probability[graph.first] + probability[graph.second]) / length
+    ends = np.concatenate([graph.first, graph.second]), np.concatenate([graph.second, graph.first])
+    potential = _potential(graph.count, ends, np.tile(conductance, 2), first, last)
+    flow = np.tile(conductance, 2) * (potential[ends[0]] - potential[ends[1]])
+    down = flow > 1e-12
+    order = np.argsort(ends[0][down], kind="stable")
+    source, target, flow = ends[0][down][order], ends[1][down][order], flow[down][order]
+    total = np.bincount(source, flow, minlength=graph.count)
+    # Row i holds the shares of its current as one stretch of the unit from i to i + 1.
+    run = np.cumsum(flow / total[source])
+    before = np.concatenate([[0.0], np.cumsum(total > 0)])[source]
+    mark = source + np.clip(run - before, 0.0, 1.0)
+    sinks = np.zeros(graph.count, bool)
+    sinks[last] = True
+    start = rng.choice(first, STREAMLINES, p=total[first] / total[first].sum())
+    steps = [start]
+    for _ in range(graph.count):
+        at = steps[-1]
+        going = ~sinks[at] & (total[at] > 0)
+        if not going.any():
+            break
+        chosen = np.minimum(np.searchsorted(mark, at + rng.random(len(at))), len(target) - 1)
+        steps.append(np.where(going, target[chosen], at))
+    walks = np.array(steps).T
+    return [walk[np.concatenate([[True], walk[1:] != walk[:-1]])] for walk in walks]
 
 
-def _path(before: NDArray[np.int32], places: NDArray[np.float64], goal: int) -> NDArray[np.float32]:
-    chain = []
-    while goal >= 0:
-        chain.append(goal)
-        goal = int(before[goal])
-    if len(chain) < 2:
-        return np.empty((0, 3), np.float32)
-    line = resample(places[chain[::-1]], 0.5)
+def _potential(
+    count: int,
+    ends: tuple[NDArray[np.int32], NDArray[np.int32]],
+    conductance: NDArray[np.floating],
+    first: NDArray[np.int64],
+    last: NDArray[np.int64],
+) -> NDArray[np.float64]:
+    """Potential at every node: 1 on the first zone, 0 on the last, no current gained or lost elsewhere."""
+    potential = np.full(count, 0.5)
+    potential[first], potential[last] = 1.0, 0.0
+    free = np.ones(count, bool)
+    free[first] = free[last] = False
+    links = csr_matrix((conductance, ends), shape=(count, count))
+    whole = np.asarray(links.sum(axis=1)).ravel()
+    inner = links[free]
+    system = diags(whole[free]) - inner[:, free]
+    given = inner[:, ~free] @ potential[~free]
+    scale = diags(1.0 / whole[free])
+    solved, _ = cg(system, given, x0=potential[free], rtol=1e-6, maxiter=2000, M=scale)
+    potential[free] = solved
+    return potential
+
+
+def _smoothed(corners: NDArray[np.float64]) -> NDArray[np.float32]:
+    line = resample(corners, 0.5)
     line = smooth(line, min(_SMOOTHING_POINTS, len(line) / 8)) if len(line) > 8 else line
     return resample(line).astype(np.float32)

@@ -17,7 +17,7 @@ from typing import IO, Any
 
 import nibabel as nib
 import numpy as np
-from nibabel.streamlines.tractogram_file import HeaderWarning
+from nibabel.streamlines.tractogram_file import HeaderError, HeaderWarning
 from numpy.typing import NDArray
 
 from byway.knowledge.faults import Fault, ImageError
@@ -84,7 +84,7 @@ def read_tractogram(path: str | Path, limit: int = KEPT) -> Tractogram:
             Fault(
                 "tractogram-damaged",
                 str(path),
-                f"{type(error).__name__}: {error}",
+                f"{type(error).__name__}: {' '.join(str(error).split())}",
                 "a whole TRK, TCK or TRX file",
                 "write the file again with the tool that made it",
             )
@@ -108,7 +108,11 @@ def _opened(path: Path) -> Iterator[tuple[Iterator[NDArray[np.floating]], Volume
             load: Any = nib.streamlines.load
             lazy = load(str(path), lazy_load=True)
         except HeaderWarning as error:
-            raise _bad_affine(path, str(error)) from error
+            raise _bad_affine(path, "no voxel-to-mm matrix or no orientation") from error
+        except HeaderError as error:
+            if "affine" in str(error):
+                raise _bad_affine(path, "a voxel-to-mm matrix that cannot be inverted") from error
+            raise
     volume = None
     if path.suffix.lower() == ".trk":
         volume = _volume(path, lazy.header["dimensions"], lazy.header["voxel_to_rasmm"])
