@@ -108,3 +108,12 @@ def test_no_zip_at_all(data: bytes, tmp_path: Path) -> None:
     (tmp_path / "x.zip").write_bytes(data)
     with pytest.raises(CaseError, match="no readable zip"):
         unpack_case(tmp_path / "x.zip", tmp_path / "c")
+
+
+def test_nothing_leaves_unlooked_at(case: Path, tmp_path: Path) -> None:
+    """A case with a date in it is packed only once somebody says that they have looked; before, nothing is written."""
+    (case / "case.yaml").write_text("stage: acute\ntitle: seen on 2020-01-31\n")
+    with pytest.raises(CaseError, match="1 things that could identify a person"):
+        pack_case(case, tmp_path / "out.zip")
+    assert not (tmp_path / "out.zip").exists()
+    assert "case.yaml" in pack_case(case, tmp_path / "out.zip", reviewed=True)

@@ -11,6 +11,7 @@ import pytest
 import yaml
 
 from byway.knowledge.atomic import fingerprint
+from byway.knowledge.cases import files
 from byway.knowledge.cases.files import dump_case, inside, read_case, write_case
 from byway.knowledge.cases.model import CaseFile, case_schema
 from byway.knowledge.faults import CaseError
@@ -97,3 +98,34 @@ def test_every_cause_has_its_perilesional_prior() -> None:
     prior = load_graph().norms["scenario_prior_perilesional"].value
     assert isinstance(prior, dict)
     assert set(get_args(CaseFile.model_fields["cause"].annotation)) == set(prior)
+
+
+def test_an_older_schema_is_migrated_in_memory(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """A case of an invented version 0, which said ``phase`` for stage, opens as version 1; the file stays as it was."""
+    monkeypatch.setattr(files, "MIGRATIONS", {0: lambda old: {**{k: v for k, v in old.items() if k != "phase"},
+                                                              "stage": old["phase"]}})  # fmt: skip
+    path = tmp_path / "case.yaml"
+    path.write_text("schema_version: 0\nphase: chronic\ncause: trauma\n")
+    before = path.read_bytes()
+    case, _ = read_case(path)
+    assert (case.schema_version, case.stage, case.cause) == (1, "chronic", "trauma")
+    assert path.read_bytes() == before
+    write_case(path, case, fingerprint(path))
+    assert read_case(path)[0] == case
+
+
+def test_migrations_run_one_after_the_other(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """From version -1 by way of 0 to 1: each step sees what the step before made."""
+    steps = {-1: lambda old: {**old, "title": "one"}, 0: lambda old: {**old, "title": old["title"] + ", two"}}
+    monkeypatch.setattr(files, "MIGRATIONS", steps)
+    path = tmp_path / "case.yaml"
+    path.write_text("schema_version: -1\nstage: acute\n")
+    assert read_case(path)[0].title == "one, two"
+
+
+def test_a_version_that_nothing_leads_from_is_refused(tmp_path: Path) -> None:
+    """A schema older than any migration is named with its line; nothing is guessed."""
+    path = tmp_path / "case.yaml"
+    path.write_text("schema_version: 0\nstage: acute\n")
+    with pytest.raises(CaseError, match=r"case\.yaml:1 schema_version: schema 0"):
+        read_case(path)

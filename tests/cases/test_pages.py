@@ -74,6 +74,38 @@ def test_threads() -> None:
     assert {(depth, note.text) for depth, note in thread([b, a, lost])} == {(0, "a"), (1, "b"), (0, "c")}
 
 
+def test_rivals_are_settled_by_a_page_that_replaces_both(tmp_path: Path) -> None:
+    """Keeping one of two versions leaves one current page with its words; all three files are still there."""
+    pages, first = Pages(tmp_path), Note(author="AB", text="one")
+    pages.put(first)
+    left, right = Note(author="AB", text="left", replaces=first.id), Note(author="CD", text="right", replaces=first.id)
+    pages.put(left)
+    pages.put(right)
+    kept = pages.settle_rivals(right, "EF")
+    assert [(page.id, page.text) for page in pages.current("note") if isinstance(page, Note)] == [(kept.id, "right")]
+    assert pages.rivals("note") == []
+    assert len(pages.all("note")) == 4
+    with pytest.raises(CaseError, match="no other version"):
+        pages.settle_rivals(kept, "EF")
+
+
+def test_an_edited_note_keeps_its_place_and_its_answers(tmp_path: Path) -> None:
+    """Answers and resolutions that name the first version hold for the edited one; the thread keeps its order."""
+    pages = Pages(tmp_path)
+    first, later = Note(author="AB", text="one"), Note(author="AB", text="two")
+    answer = Note(author="CD", text="answer", reply_to=first.id)
+    for page in (first, later, answer, Resolution(author="CD", note=first.id)):
+        pages.put(page)
+    edited = Note(author="AB", text="one, better", replaces=first.id)
+    pages.put(edited)
+    origins = pages.origins("note")
+    notes = [page for page in pages.current("note") if isinstance(page, Note)]
+    texts = [(depth, note.text) for depth, note in thread(notes, origins)]
+    assert texts.index((1, "answer")) == texts.index((0, "one, better")) + 1
+    assert set(texts) == {(0, "one, better"), (1, "answer"), (0, "two")}
+    assert pages.settled() == {origins[edited.id]: True}
+
+
 def _write_many(folder: str, author: str, notes: int, changes: int) -> None:
     pages = Pages(Path(folder))
     for i in range(notes):
@@ -84,7 +116,7 @@ def _write_many(folder: str, author: str, notes: int, changes: int) -> None:
 
 def test_two_processes_write_one_case(tmp_path: Path) -> None:
     """Two processes each write 500 notes and 100 accounts to one case: all 1,200 are there, none broken."""
-    context = multiprocessing.get_context("spawn")
+    context = multiprocessing.get_context("fork")
     writers = [context.Process(target=_write_many, args=(str(tmp_path), name, 500, 100)) for name in ("AB", "CD")]
     for writer in writers:
         writer.start()

@@ -39,7 +39,7 @@ def notes_told(pages: Pages, graph: Any, titles: Mapping[str, str]) -> dict[str,
     """All current notes in threads, versions written at once, and who and what can be filtered by."""
     notes = [page for page in pages.current("note") if isinstance(page, Note)]
     settled, origins = pages.settled(), pages.origins("note")
-    rows = []
+    rows: list[dict[str, Any]] = []
     for depth, note in thread(notes, origins):
         first = origins.get(note.id, note.id)
         rows.append({
