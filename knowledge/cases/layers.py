@@ -12,18 +12,21 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path
 
-from byway.knowledge.atomic import write_text
+from byway.knowledge.atomic import fingerprint, write_text
 from byway.knowledge.cases.case import Case, open_case
 from byway.knowledge.cases.files import inside
+from byway.knowledge.cases.model import CaseFile
 from byway.knowledge.faults import CaseError, Fault
 from byway.knowledge.graph.emit import emit_yaml
 from byway.knowledge.graph.overlay_files import read_overlay
 from byway.knowledge.graph.overlays import Overlay
-from byway.knowledge.yamltext import read_yaml
+from byway.knowledge.yamltext import parse_yaml, read_yaml, validate
 
 __all__ = ["CaseModel", "keep_model", "mention_overlay", "overlay_path", "overlays_of", "read_models", "slug"]
 
 OVERLAYS, MODELS = "overlays", "models"
+ANY = re.compile(r"^overlays\s*:", re.M)
+ONE_LINE = re.compile(r"^overlays: ?\[[^\[\]\n#]*\][ \t]*\n", re.M)
 
 
 def slug(text: str) -> str:
@@ -53,7 +56,7 @@ def overlays_of(case: Case) -> list[tuple[str, Overlay]]:
 
 
 def mention_overlay(case: Case, names: Iterable[str]) -> Case:
-    """Write to case.yaml which overlays it uses; other unsaved changes of ``case`` stay unsaved.
+    """Write to case.yaml which overlays it uses; its comments stay, and other unsaved changes of ``case`` unsaved.
 
     Raises
     ------
@@ -62,11 +65,22 @@ def mention_overlay(case: Case, names: Iterable[str]) -> Case:
     """
     listed = tuple(names)
     on_disk = open_case(case.folder)
-    if on_disk.seen != case.seen:
-        return case.with_spec(overlays=listed).save()  # tells of the rival version
-    saved = on_disk.with_spec(overlays=listed).save()
     changed = case.with_spec(overlays=listed)
-    return Case(changed.spec, case.folder, saved.seen, case.where)
+    if on_disk.seen != case.seen:
+        return changed.save()  # tells of the rival version
+    wanted = on_disk.with_spec(overlays=listed)
+    line = emit_yaml({"overlays": list(listed)})
+    text = case.path.read_text("utf-8")
+    if ONE_LINE.search(text):
+        text = ONE_LINE.sub(lambda _: line, text, count=1)
+    elif not ANY.search(text):
+        text = f"{text.rstrip()}\n{line}"
+    if validate(CaseFile, parse_yaml(text, case.path.name, CaseError), CaseError) == wanted.spec:
+        write_text(case.path, text)
+        seen = fingerprint(case.path)
+    else:  # the list is written in some other way: let the whole file be written anew
+        seen = wanted.save().seen
+    return Case(changed.spec, case.folder, seen, case.where)
 
 
 @dataclass(frozen=True)
@@ -97,8 +111,8 @@ def keep_model(folder: Path, model: CaseModel) -> Path:
     """
     if not model.name.strip():
         raise CaseError(Fault("model", "models", "a model without a name", "a name"))
-    for path in model.overlays:
-        inside(folder, path)
+    for overlay in model.overlays:
+        inside(folder, overlay)
     path = folder / MODELS / f"{slug(model.name)}.yaml"
     write_text(path, emit_yaml({"name": model.name, "overlays": list(model.overlays)}))
     return path

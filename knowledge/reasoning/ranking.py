@@ -26,7 +26,7 @@ def ranking_change(before: Explanation, after: Explanation) -> pd.DataFrame:
     rows = []
     for key in (*second, *(key for key in first if key not in second)):
         old, new = first.get(key), second.get(key)
-        named = (new or old)
+        named = new or old
         assert named is not None
         rows.append(
             {
@@ -48,7 +48,7 @@ def ranking_words(table: pd.DataFrame) -> str:
     """One sentence about a table of :func:`ranking_change`."""
     if table.empty:
         return "There is no account to rank."
-    largest = table.loc[table["change"].abs().idxmax()]
+    largest = table.iloc[int(table["change"].abs().to_numpy().argmax())]
     if abs(float(largest["change"])) < _SAME:
         return "The ranking stays as it is."
     led, leads = table[table["rank_before"] == 1], table[table["rank_after"] == 1]

@@ -63,7 +63,8 @@ _FIELDS: dict[Kind, tuple[Field, ...]] = {
     "sign": (
         Field("name", "word"), Field("domain", "choice"), Field("side_rule", "choice"), Field("depends", "depends"),
         Field("examination", "text"), Field("minutes", "number"), Field("sensitivity", "share"),
-        Field("specificity", "share"), Field("accuracy_source", "key", ("source",)), Field("leak", "share", needed=False),
+        Field("specificity", "share"), Field("accuracy_source", "key", ("source",)),
+        Field("leak", "share", needed=False),
         _NOTE,
     ),
     "claim": (
@@ -104,7 +105,7 @@ def new_block(kind: Kind) -> dict[str, Any]:
 
 def fields_told() -> dict[str, list[dict[str, Any]]]:
     """The fields of every kind, for the browser."""
-    told = {}
+    told: dict[str, list[dict[str, Any]]] = {}
     for kind in EDITABLE:
         rows = []
         for field in _FIELDS[kind]:

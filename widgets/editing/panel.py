@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from typing import Any, ClassVar
 
+import numpy as np
 import traitlets as t
 
 from byway.knowledge.cases.layers import read_models
@@ -194,7 +195,7 @@ class EditingPanel(Panel):
         action = str(message["action"])
         if action not in ACTIONS:
             raise GraphError(Fault("edit", "editing", f"action {action!r}", ", ".join(ACTIONS)))
-        chosen: Action = action  # type: ignore[assignment]
+        chosen: Action = action
         kind, key = _kind(message["of"]), str(message["key"])
         body = dict(message.get("body") or {})
         return make_edit(self._overlay, chosen, kind, key, body, reason=str(message.get("reason", "")).strip(),
@@ -247,7 +248,7 @@ class EditingPanel(Panel):
     # -- waypoints --------------------------------------------------------------------------------------------------
 
     def _on_slices(self, message: dict[str, Any]) -> None:
-        low = TEMPLATE_GRID.to_mm([[0.0, 0.0, 0.0]])[0]
+        low = TEMPLATE_GRID.to_mm(np.zeros((1, 3)))[0]
         volume = slices_volume()
         self._tell("slices", {"data": volume}, shape=volume.shape, low_mm=low, step_mm=SLICE_STEP)
 

@@ -207,7 +207,7 @@ class Session:
         self.choose([*(name for name, _ in self.below), path])
 
     def choose(self, paths: Sequence[str], *, write: bool = True) -> None:
-        """Use these overlays of the case (in this order), one's own above them where it stands among them or has entries.
+        """Use these overlays of the case, in this order; one's own lies above them where it has entries.
 
         Raises
         ------

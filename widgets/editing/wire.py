@@ -121,7 +121,7 @@ def _node(
 
 
 def _get(content: Content, kind: str, key: str) -> Record | None:
-    return content.records(kind).get(key) if kind in KINDS else None  # type: ignore[arg-type]
+    return content.records(kind).get(key) if kind in KINDS else None
 
 
 def _name(content: Content, kind: str, key: str) -> str:
