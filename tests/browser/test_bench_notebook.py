@@ -124,3 +124,19 @@ def test_the_first_notebook_runs(page: Any, notebook_server: Callable[[str], Not
     assert page.locator(".byway-head").inner_text().count("no diagnosis") == 1
     page.screenshot(path=artefacts / "first_case.png")
     assert page.strays == []
+
+
+def test_further_views_open(page: Any, notebook_server: Callable[[str], NotebookServer], artefacts: Path) -> None:
+    """Every view below the main four opens when asked for, the 3-D head included, and nothing is fetched for it."""
+    server = notebook_server("lab")
+    open_and_run(page, server, notebook(server.root, "views.ipynb", BENCH))
+    page.wait_for_selector(".bw-card", timeout=90_000)
+    shows = {"profile": ".byway-profile .bw-prof-row", "routes": ".bw-route-map", "whatif": ".byway-whatif input",
+             "own": ".byway-own .bw-own-element", "steady": ".byway-steady .bw-reserve li", "graph": ".bw-shelf-item",
+             "head": ".byway-head-box .gl-container canvas"}  # fmt: skip
+    for name, what in shows.items():
+        page.locator(f".byway-tabs [data-key={name}]").click()
+        page.wait_for_selector(what, timeout=60_000)
+    page.wait_for_timeout(2500)
+    page.locator(".byway-head-box").screenshot(path=artefacts / "head.png")
+    assert page.strays == []

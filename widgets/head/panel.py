@@ -49,6 +49,7 @@ class HeadPanel(ipywidgets.VBox):  # type: ignore[misc]
         self.tools = _HeadTools(source)
         self.state = self.tools.state
         self.figure = go.FigureWidget(layout=_layout())
+        self.figure._config = {**self.figure._config, "responsive": True, "displaylogo": False}
         super().__init__([self.tools, self.figure])
         self.add_class("byway-head-box")
         self._touched = False
@@ -146,7 +147,7 @@ def _lines(lines: np.ndarray[Any, Any], tone: str, width: float, name: str) -> A
 def _letters() -> list[Any]:
     """L and R beside the head: MNI x grows to the right."""
     left, right = word("shared.left_letter"), word("shared.right_letter")
-    return [go.Scatter3d(x=[-84, 84], y=[-18, -18], z=[-82, -82], mode="text", text=[left, right], hoverinfo="skip",
+    return [go.Scatter3d(x=[-86, 86], y=[-18, -18], z=[-20, -20], mode="text", text=[left, right], hoverinfo="skip",
                          textfont={"size": 18, "color": "#7a828c"})]  # fmt: skip
 
 
@@ -157,7 +158,7 @@ def _safe(text: str) -> str:
 
 def _layout() -> dict[str, Any]:
     axis = {"visible": False, "showbackground": False}
-    camera = {"eye": {"x": -1.5, "y": 0.35, "z": 0.55}, "up": {"x": 0, "y": 0, "z": 1}}
+    camera = {"eye": {"x": -1.25, "y": 0.85, "z": 0.55}, "up": {"x": 0, "y": 0, "z": 1}}
     return {
         "height": 560,
         "margin": {"l": 0, "r": 0, "t": 0, "b": 0},

@@ -41,7 +41,17 @@ function render({ model, el }) {
     mark(panel, "data-stamp", model.get("stamp"));
   }
 
-  return watch(model, ["choices", "shown", "parts", "stamp"], draw);
+  // The picture fits itself to its place only when the window says that it was resized.
+  const fit = () => window.dispatchEvent(new Event("resize"));
+  const sized = new ResizeObserver(fit);
+  sized.observe(panel);
+  const later = [400, 1500, 4000].map((ms) => setTimeout(fit, ms));
+  const stop = watch(model, ["choices", "shown", "parts", "stamp"], draw);
+  return () => {
+    sized.disconnect();
+    later.forEach(clearTimeout);
+    stop();
+  };
 }
 
 export default { render };
