@@ -119,6 +119,7 @@ class Pages:
     def __init__(self, folder: Path) -> None:
         self.folder = folder
         self.unreadable = FaultReport()
+        self._whole: dict[Path, Page] = {}  # a page never changes, so each is read once
 
     def put(self, page: Page) -> Path:
         """Write one page durably and return its path; an existing page is never overwritten."""
@@ -135,7 +136,9 @@ class Pages:
         found: list[Page] = []
         for folder in sorted(set(FOLDERS.values()) if kind is None else {FOLDERS[kind]}):
             for path in sorted((self.folder / folder).glob("*.json")):
-                page = self._read(path)
+                page = self._whole.get(path) or self._read(path)
+                if page is not None:
+                    self._whole[path] = page
                 if page is not None and (kind is None or page.kind == kind):  # type: ignore[attr-defined]
                     found.append(page)
         return sorted(found, key=lambda page: page.id)

@@ -49,6 +49,7 @@ class NotesPanel(Panel):
 
     def __init__(self, source: Any) -> None:
         super().__init__(source)
+        self._pages: Pages | None = None
         self._handlers: dict[str, Callable[[Message], None]] = {
             "author": self._on_author,
             "write": self._on_write,
@@ -72,7 +73,11 @@ class NotesPanel(Panel):
     def pages(self) -> Pages | None:
         """The pages of the case, or None where it lies in no folder."""
         case = self.state.case
-        return Pages(case.folder) if case is not None and case.path.is_file() else None
+        if case is None or not case.path.is_file():
+            return None
+        if self._pages is None or self._pages.folder != case.folder:
+            self._pages = Pages(case.folder)
+        return self._pages
 
     # -- what is shown ----------------------------------------------------------------------------------------------
 

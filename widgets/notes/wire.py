@@ -37,6 +37,8 @@ def label_of(anchor: Anchor, graph: Any, titles: Mapping[str, str]) -> str:
 
 def notes_told(pages: Pages, graph: Any, titles: Mapping[str, str]) -> dict[str, Any]:
     """All current notes in threads, versions written at once, and who and what can be filtered by."""
+    pages.all()
+    broken = [str(fault) for fault in pages.unreadable]
     notes = [page for page in pages.current("note") if isinstance(page, Note)]
     settled, origins = pages.settled(), pages.origins("note")
     rows: list[dict[str, Any]] = []
@@ -58,7 +60,7 @@ def notes_told(pages: Pages, graph: Any, titles: Mapping[str, str]) -> dict[str,
         "authors": sorted({row["author"] for row in rows}),
         "tags": sorted({tag for row in rows for tag in row["tags"]}),
         "kinds": sorted({row["anchor"]["kind"] for row in rows}),
-        "unreadable": [str(fault) for fault in pages.unreadable.faults],
+        "unreadable": broken,
     }
 
 
