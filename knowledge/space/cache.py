@@ -18,7 +18,10 @@ import numpy as np
 from numpy.typing import NDArray
 from platformdirs import user_cache_dir
 
-__all__ = ["cache_folder", "load_entry", "store_entry"]
+__all__ = ["KEPT", "cache_folder", "load_entry", "store_entry"]
+
+KEPT = 4
+"""Entries of one kind that stay: a few versions of the graph can be used in turn without building anew."""
 
 _LIST = "entry.json"
 
@@ -44,8 +47,11 @@ def load_entry(name: str) -> tuple[dict[str, NDArray[Any]], dict[str, Any]] | No
     return arrays, listed["facts"]
 
 
-def store_entry(name: str, arrays: Mapping[str, NDArray[Any]], facts: Mapping[str, Any]) -> bool:
-    """Write one entry, replacing what was there; False (and no harm) where the folder cannot be written."""
+def store_entry(name: str, arrays: Mapping[str, NDArray[Any]], facts: Mapping[str, Any], *, kept: int = KEPT) -> bool:
+    """Write one entry, replacing what was there; False (and no harm) where the folder cannot be written.
+
+    Of entries of the same kind (the same word before the first hyphen) the ``kept`` newest stay.
+    """
     root = cache_folder()
     try:
         root.mkdir(parents=True, exist_ok=True)
@@ -61,6 +67,14 @@ def store_entry(name: str, arrays: Mapping[str, NDArray[Any]], facts: Mapping[st
             (building / _LIST).write_text(json.dumps(listed), "utf-8")
             shutil.rmtree(root / name, ignore_errors=True)
             building.rename(root / name)
+        _prune(root, name.partition("-")[0], kept)
     except OSError:
         return False
     return True
+
+
+def _prune(root: Path, kind: str, kept: int) -> None:
+    entries = [folder for folder in root.glob(f"{kind}*") if (folder / _LIST).is_file()]
+    entries.sort(key=lambda folder: (folder / _LIST).stat().st_mtime, reverse=True)
+    for folder in entries[kept:]:
+        shutil.rmtree(folder, ignore_errors=True)

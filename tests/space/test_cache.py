@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 
 import numpy as np
@@ -54,6 +55,16 @@ def test_nothing_is_unpickled(folder: Path) -> None:
     store_entry("entry", ARRAYS, {})
     np.save(folder / "entry" / "points.npy", np.array([{"a": 1}], object), allow_pickle=True)
     assert load_entry("entry") is None
+
+
+def test_only_the_newest_entries_of_a_kind_stay(folder: Path) -> None:
+    """Storing a fifth version drops the oldest; entries of another kind stay."""
+    store_entry("other-0", ARRAYS, {})
+    for number in range(5):
+        store_entry(f"geometry-{number}", ARRAYS, {})
+        os.utime(folder / f"geometry-{number}" / "entry.json", (number, number))
+    store_entry("geometry-5", ARRAYS, {})
+    assert sorted(each.name for each in folder.iterdir()) == [*(f"geometry-{n}" for n in (2, 3, 4, 5)), "other-0"]
 
 
 def test_a_folder_that_cannot_be_written_does_no_harm(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -42,7 +42,7 @@ def earlier_of(graph: Graph, template: Template) -> Earlier:
 
 def built(graph: Graph, segments: dict[str, Segment], earlier: Earlier | None) -> Geometry:
     """Geometry of all curated regions and some segments."""
-    spread = {key: 1.0 for key in (*graph.regions, *segments)}
+    spread = dict.fromkeys((*graph.regions, *segments), 1.0)
     return build_geometry(graph.regions, segments, spread, progress=False, earlier=earlier)[0]
 
 
