@@ -14,7 +14,7 @@ from byway.knowledge.reasoning.explanation import Explanation
 from byway.knowledge.reasoning.grouping import Grouping, regroup
 from byway.knowledge.reasoning.posterior import Reckoning, reckon, without_finding
 from byway.knowledge.reasoning.scenarios import AXES, AxisPriors
-from byway.knowledge.reasoning.wording import join
+from byway.knowledge.reasoning.wording import DEPARTURE_WORDS, join
 
 __all__ = ["EASILY", "NARROW_ODDS", "Sensitivity", "sensitivity"]
 
@@ -85,9 +85,9 @@ def _prior_changes(reckoning: Reckoning) -> list[tuple[str, str, Callable[[], Re
     changes: list[tuple[str, str, Callable[[], Reckoning]]] = []
     for axis, values in AXES.items():
         for value in values[1:]:
-            for factor, words in ((0.5, "halved"), (2.0, "doubled")):
+            for factor, words in ((0.5, "half"), (2.0, "twice")):
                 priors = _scaled(reckoning.priors, axis, value, factor)
-                said = f"prior of {axis} {value.replace('_', ' ')} {words}"
+                said = f"{words} as likely beforehand that {DEPARTURE_WORDS[axis, value]}"
                 changes.append(("prior", said, partial(replace, reckoning, priors=priors)))
     return changes
 
