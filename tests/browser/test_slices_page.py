@@ -5,6 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Any
 
+import nibabel as nib
 import numpy as np
 import pytest
 from browser.bare_page import BarePage
@@ -299,3 +300,85 @@ def test_it_looks_right_from_narrow_to_wide(bare: BarePage, artefacts: Path) -> 
     bare.page.evaluate(f"{VIEW}.look.set({{ contrast: true }})")
     bare.settle(0.2)
     bare.page.screenshot(path=artefacts / "slices-contrast.png", full_page=True)
+
+
+def test_the_wheel_turns_slices_and_ctrl_zooms(bare: BarePage, state: BenchState) -> None:
+    """A wheel step moves one slice; with Ctrl it zooms about the pointer and leaves the slice alone."""
+    box = bare.page.locator(".bs-film[data-plane=axial]").bounding_box()
+    bare.page.mouse.move(box["x"] + 200, box["y"] + 200)
+    z = state.cursor_mm[2]
+    bare.page.mouse.wheel(0, -100)
+    bare.settle(0.2)
+    assert abs(state.cursor_mm[2] - z) >= 1
+    z = state.cursor_mm[2]
+    zoom = bare.page.evaluate(f"{VIEW}.films[0].sight.zoom")
+    bare.page.keyboard.down("Control")
+    bare.page.mouse.wheel(0, -100)
+    bare.page.keyboard.up("Control")
+    bare.settle(0.2)
+    assert bare.page.evaluate(f"{VIEW}.films[0].sight.zoom") > zoom
+    assert state.cursor_mm[2] == z
+
+
+def test_fingers(chromium: Any, state: BenchState) -> None:
+    """On a touch screen one finger draws, two zoom and draw nothing, and buttons are large enough to hit."""
+    context = chromium.new_context(viewport={"width": 1100, "height": 1000}, has_touch=True)
+    page = context.new_page()
+    bare = BarePage(page, SlicesPanel(state))
+    bare.show()
+    page.wait_for_function(f"{VIEW}.store.bits && {VIEW}.store.volumes.get('scan:template')")
+    bare.settle(0.2)
+    page.evaluate(f"{VIEW}.look.set({{ tool: 'brush' }})")
+    box = page.locator(".bs-film[data-plane=axial]").bounding_box()
+    touch = page.context.new_cdp_session(page)
+
+    def fingers(kind: str, *spots: tuple[float, float]) -> None:
+        points = [{"x": box["x"] + x, "y": box["y"] + y, "id": n} for n, (x, y) in enumerate(spots)]
+        touch.send("Input.dispatchTouchEvent", {"type": kind, "touchPoints": points})
+
+    fingers("touchStart", (150, 200))
+    fingers("touchMove", (190, 220))
+    fingers("touchEnd")
+    bare.pump()
+    assert state.drawing.history.done[-1].label == "stroke"
+    steps, zoom = len(state.drawing.history.done), page.evaluate(f"{VIEW}.films[0].sight.zoom")
+    fingers("touchStart", (200, 200))
+    fingers("touchStart", (200, 200), (260, 260))
+    fingers("touchMove", (170, 170), (300, 300))
+    fingers("touchMove", (140, 140), (330, 330))
+    fingers("touchEnd")
+    bare.pump()
+    assert page.evaluate(f"{VIEW}.films[0].sight.zoom") > 1.3 * zoom
+    assert len(state.drawing.history.done) == steps
+    assert np.array_equal(bits_here(bare), state.drawing.bits)
+    context.close()
+
+
+def test_a_large_file_is_refused_before_it_is_sent(bare: BarePage) -> None:
+    """A file above the limit is refused in words without a byte sent."""
+    big = "{ size: 2e9, name: 'big.nii' }"
+    text = bare.page.evaluate(f"{VIEW}.store.upload({big}, 'scan', {{}}, () => 0, 'too large').catch((e) => e.message)")
+    assert text == "too large"
+    assert not [m for m in bare.heard if m["kind"] == "upload"]
+
+
+def test_a_graded_map_shows_its_own_scale(bare: BarePage, state: BenchState, tmp_path: Path) -> None:
+    """A z-map loaded with its ends lies beside the drawing, shows what its values meant, and can be taken away."""
+    volume = np.zeros(TEMPLATE_GRID.shape, np.float32)
+    volume[40:60, 130:150, 80:95] = -2.0
+    volume[45:55, 135:145, 84:90] = -4.0
+    image = nib.Nifti1Image(volume, TEMPLATE_GRID.affine)
+    image.set_sform(TEMPLATE_GRID.affine, "mni")
+    nib.save(image, tmp_path / "z.nii.gz")
+    drawn = state.drawing.counts()
+    state.load_file(tmp_path / "z.nii.gz", "graded", scale=(0, -4))
+    bare.settle(0.4)
+    assert state.drawing.counts() == drawn
+    assert state.lesion.effect_map()[50, 140, 87] == 1.0
+    bare.page.locator("summary", has_text="Overlays").click()
+    assert "-4" in bare.page.locator(".bs-side").inner_text()
+    bare.page.get_by_role("button", name="Remove the graded map").click()
+    bare.pump()
+    assert state.lesion.effect_volume is None
+    assert state.undo() is not None
+    assert state.lesion.effect_volume is not None

@@ -44,6 +44,7 @@ export function backgrounds(view) {
     first.value = look.scan;
     second.value = look.second;
     second.hidden = store.scans.length < 2;
+    blend.show(look.blend);
     blend.hidden = !look.second;
     presets.hidden = scan.unit !== "HU";
     say(unit, scan.unit);
@@ -62,19 +63,25 @@ function loader(view) {
     "scan_other"];
   const use = h("select", { "aria-label": words.load_as }, uses.map((key) => h("option", { value: key }, words[`load_${key}`])));
   const label = h("input", { type: "number", min: "1", placeholder: words.load_label, "aria-label": words.load_label });
+  const none = h("input", { type: "number", step: "any", placeholder: words.load_none, "aria-label": words.load_none });
+  const full = h("input", { type: "number", step: "any", placeholder: words.load_full, "aria-label": words.load_full });
+  const scale = h("div", { class: "bs-fields", hidden: true }, none, full);
   const file = h("input", { type: "file", accept: ".nii,.gz,.nii.gz,.mgz,.hdr,.img", "aria-label": words.load_file });
   const path = h("input", { type: "text", placeholder: words.load_path, "aria-label": words.load_path });
   const state = h("p", { class: "bw-soft", role: "status" });
   const wanted = () => {
     const [kind, ...sequence] = use.value.split("_");
-    return [kind, { sequence: sequence.join("_"), label: label.value === "" ? null : Number(label.value) }];
+    const number = (field) => (field.value === "" ? null : Number(field.value));
+    const ends = kind === "graded" && none.value !== "" && full.value !== "" ? [number(none), number(full)] : null;
+    return [kind, { sequence: sequence.join("_"), label: number(label), scale: ends }];
   };
   file.addEventListener("change", async () => {
     const [chosen] = file.files;
     if (!chosen) return;
     const [kind, options] = wanted();
     try {
-      await store.upload(chosen, kind, options, (share) => say(state, `${words.loading} ${Math.round(share * 100)} %`));
+      await store.upload(chosen, kind, options, (share) => say(state, share < 1
+        ? `${words.loading} ${Math.round(share * 100)} %` : words.loading), words.too_large);
     } catch (error) {
       say(state, String(error.message || error));
     }
@@ -88,12 +95,15 @@ function loader(view) {
   };
   path.addEventListener("keydown", (event) => event.key === "Enter" && fromPath());
   const node = h("details", { class: "bs-load" }, h("summary", {}, words.load), h("div", { class: "bs-fields" }, use, label),
-    file, h("div", { class: "bs-fields" }, path, h("button", { type: "button", class: "bs-button", onclick: fromPath },
+    scale, file, h("div", { class: "bs-fields" }, path, h("button", { type: "button", class: "bs-button", onclick: fromPath },
       words.load_go)), state);
   store.on((event, message) => {
     if (event === "loaded") say(state, message.note || words.loaded);
     if (event === "fault" && node.open) say(state, message.text);
   });
-  use.addEventListener("change", () => mark(label, "hidden", use.value !== "mask"));
+  use.addEventListener("change", () => {
+    mark(label, "hidden", use.value !== "mask");
+    mark(scale, "hidden", use.value !== "graded");
+  });
   return node;
 }

@@ -26,11 +26,14 @@ export function overlays(view) {
   const options = h("datalist", { id: view.listId });
   const list = h("ul", { class: "bs-shown" });
   let byText = null;
+  let from = null;
   const fillOptions = () => {
-    if (byText || !store.elements) {
+    if (byText && from === store.elements) return;
+    if (!store.elements) {
       if (!store.elements && store.hasElements) store.volume("elements");
       return;
     }
+    from = store.elements;
     byText = new Map(store.elements.ids.map((_, n) => {
       const e = elementOf(store, n);
       return [`${e.name}, ${words[e.side]}`, e];
@@ -45,6 +48,8 @@ export function overlays(view) {
     search.value = "";
   });
   const graded = toggle(words.show_graded, () => look.showGraded, (on) => look.set({ showGraded: on }));
+  const drop = h("button", { type: "button", class: "bs-button bs-small", onclick: () =>
+    view.command({ op: "remove_graded" }) }, words.remove_graded);
   const scale = bar(EFFECT_SCALE, "0", "1");
   const meaning = h("p", { class: "bw-soft" });
   const uncharted = toggle(words.show_uncharted, () => look.showUncharted, (on) => look.set({ showUncharted: on }),
@@ -52,7 +57,7 @@ export function overlays(view) {
   const chance = toggle(words.show_chance, () => look.showChance, (on) => look.set({ showChance: on }), words.show_chance_more);
   const chanceScale = bar(CHANCE_SCALE, "0 %", "100 %");
   const node = h("details", { class: "bs-section" }, h("summary", {}, h("h3", {}, words.overlays)), search, options, list,
-    uncharted, chance, chanceScale, graded, scale, meaning);
+    uncharted, chance, chanceScale, graded, scale, meaning, drop);
   node.addEventListener("toggle", () => node.open && fillOptions());
   const make = (item) => {
     const e = elementOf(store, item.position);
@@ -76,7 +81,7 @@ export function overlays(view) {
     fillOptions();
     keep(list, look.shown, (s) => s.position, make, (row, s) => row.change(s, look.shown.indexOf(s)));
     [graded, uncharted, chance].forEach((item) => item.refresh());
-    for (const item of [graded, scale, meaning]) item.hidden = !store.gradedScale;
+    for (const item of [graded, scale, meaning, drop]) item.hidden = !store.gradedScale;
     say(meaning, store.gradedScale || "");
     chanceScale.hidden = !look.showChance;
     mark(search, "disabled", !store.hasElements);

@@ -12,7 +12,7 @@ import traitlets as t
 from byway.knowledge.faults import BywayError
 from byway.widgets.front import load_css, load_esm
 from byway.widgets.panel import Panel
-from byway.widgets.slices.uploads import Uploads
+from byway.widgets.slices.uploads import MOST_BYTES, Uploads
 from byway.widgets.state import BenchState
 from byway.widgets.wire import plain, send
 from byway.widgets.words import word
@@ -63,6 +63,7 @@ class SlicesPanel(Panel):
         self.when(["lesion_seq"], self._show_change)
         self.when(["damage_seq"], self._show_shares)
         self.when(["accounts_seq"], self._show_chances)
+        self.when(["graph_seq"], lambda: self._tell("places", elements=self.state.geometry is not None))
         self.when(["scans_seq"], lambda: self._tell("scans", scans=self._scans()))
         self.when(["cursor_mm"], lambda: setattr(self, "cursor_mm", list(self.state.cursor_mm)))
 
@@ -147,6 +148,7 @@ class SlicesPanel(Panel):
 
     def _on_upload(self, message: dict[str, Any], buffers: list[Any]) -> None:
         lent = self._uploads.add(message, buffers)
+        self._tell("taken", upload=message["upload"], part=message["part"])
         if lent is not None:
             with lent as path:
                 self._load(path, message)
@@ -167,9 +169,20 @@ class SlicesPanel(Panel):
     def _send_table(self) -> None:
         self.revision += 1
         grid = self.state.drawing.grid
-        self._tell("table", shape=grid.shape, affine=grid.affine, space=grid.space, revision=self.revision,
-                   styles=self._styles(), scans=self._scans(), elements=self.state.geometry is not None,
-                   graded=self._graded(), **self._counts())  # fmt: skip
+        self._tell(
+            "table",
+            shape=grid.shape,
+            affine=grid.affine,
+            space=grid.space,
+            revision=self.revision,
+            styles=self._styles(),
+            scans=self._scans(),
+            elements=self.state.geometry is not None,
+            most_bytes=MOST_BYTES,
+            graded=self._graded(),
+            notes=self.state.drawing.settings.notes,
+            **self._counts(),
+        )
 
     def _styles(self) -> list[dict[str, Any]]:
         return [dict(plain(vars(style))) for style in self.state.drawing.styles]

@@ -77,23 +77,28 @@ export class Projection {
     const [first, second] = inPlaneAxes(plane);
     const canvas = document.createElement("canvas");
     [canvas.width, canvas.height] = [width, height];
+    const scan = store.scans.find((s) => s.key === look.scan);
+    const limit = scan.unit === "HU" ? look.windowOf(scan)[1] : Infinity; // else the skull hides all of a CT
     const most = new Float32Array(width * height);
     for (let b = 0, n = 0; b < height; b++) {
       for (let a = 0; a < width; a++, n++) {
         let top = -32768;
         let at = a * grid.step[first] + b * grid.step[second];
-        for (let k = 0; k < grid.shape[plane]; k++, at += grid.step[plane]) if (data[at] > top) top = data[at];
+        for (let k = 0; k < grid.shape[plane]; k++, at += grid.step[plane]) {
+          if (data[at] > top && data[at] <= limit) top = data[at];
+        }
         most[n] = top;
       }
     }
     // What is brightest along a line varies little over a brain: the window is that of the projection itself.
-    const lit = most.filter((v) => v > most[0]).sort();
+    const floor = scan.unit === "HU" ? look.windowOf(scan)[0] : most[0];
+    const lit = most.filter((v) => v > floor).sort();
     const [low, high] = [lit[Math.floor(lit.length * 0.02)], lit[Math.floor(lit.length * 0.995)]];
     const ctx = canvas.getContext("2d");
     const image = ctx.createImageData(width, height);
     for (let n = 0, p = 0; n < most.length; n++, p += 4) {
       const share = Math.min(Math.max((most[n] - low) / (high - low || 1), 0), 1);
-      const grey = most[n] > most[0] ? 40 + 150 * share : FILM_GREY;
+      const grey = most[n] > floor ? 40 + 150 * share : FILM_GREY;
       image.data[p] = image.data[p + 1] = image.data[p + 2] = grey;
       image.data[p + 3] = 255;
     }

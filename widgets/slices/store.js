@@ -100,7 +100,8 @@ export class Store {
       this.chance = arrays.chance.data;
       this.chanceMark = (this.chanceMark || 0) + 1;
       this.tell("chances");
-    } else if (kind === "elements") this.takeElements(message, arrays);
+    } else if (kind === "places") this.forgetElements(message.elements);
+    else if (kind === "elements") this.takeElements(message, arrays);
     else if (kind === "scans") {
       this.scans = message.scans;
       this.tell("scans");
@@ -112,11 +113,12 @@ export class Store {
     this.styles = message.styles;
     this.scans = message.scans;
     this.hasElements = message.elements;
+    this.mostBytes = message.most_bytes;
     this.gradedScale = message.graded;
     this.count(message);
     this.revision = message.revision;
     this.forget("graded");
-    this.tell("table");
+    this.tell("table", message);
     this.ask("bits");
   }
 
@@ -185,6 +187,15 @@ export class Store {
     this.tell("elements");
   }
 
+  /** Another graph lies under the same drawing: its elements are asked for when needed. */
+  forgetElements(known) {
+    this.hasElements = known;
+    this.elements = null;
+    this.chance = null;
+    for (const name of ["elements", "uncharted"]) this.forget(name);
+    this.tell("places");
+  }
+
   /** Positions of the elements at a flat index; asks for the map when first needed. */
   elementsAt(flat) {
     if (!this.elements) {
@@ -218,14 +229,33 @@ export class Store {
     return most;
   }
 
-  /** Sends a file in parts; `progress` gets the share sent. */
-  async upload(file, use, options, progress) {
+  /**
+   * Sends a file in parts, each when the kernel has taken the one before; `progress` gets the share sent.
+   * Throws where the file is too large, or the kernel refuses a part.
+   */
+  async upload(file, use, options, progress, tooLarge) {
+    if (file.size > this.mostBytes) throw new Error(tooLarge);
     const upload = `${this.id}-${Date.now()}`;
     const parts = Math.max(1, Math.ceil(file.size / PART));
     for (let part = 0; part < parts; part++) {
       const data = new Uint8Array(await file.slice(part * PART, (part + 1) * PART).arrayBuffer());
+      const taken = this.next((event, message) => (event === "taken" && message.upload === upload && message.part === part)
+        || event === "fault");
       this.send("upload", { upload, part, parts, size: file.size, name: file.name, use, options }, { data });
+      const [event, message] = await taken;
+      if (event === "fault") throw new Error(message.text);
       progress((part + 1) / parts);
     }
+  }
+
+  /** Waits for an event that passes a test. */
+  next(test) {
+    return new Promise((resolve) => {
+      const stop = this.on((event, message) => {
+        if (!test(event, message)) return;
+        stop();
+        resolve([event, message]);
+      });
+    });
   }
 }

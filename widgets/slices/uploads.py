@@ -13,7 +13,7 @@ from byway.knowledge.faults import BywayError, Fault
 
 __all__ = ["MOST_BYTES", "Uploads"]
 
-MOST_BYTES = 2_000_000_000
+MOST_BYTES = 1_600_000_000
 
 
 class Uploads:

@@ -155,9 +155,15 @@ class View extends WithActions {
       this.refreshControls();
       this.selectedFromModel();
       setTimeout(() => store.hasElements && store.volume("elements"), 400); // after the first picture
+      if (detail && detail.notes && detail.notes.length) this.announce(detail.notes.join("; "));
     } else if (event === "fault") this.announce(detail.text);
     else if (event === "saved") this.announce(`${this.words.saved} ${detail.files.join(", ")}`);
     else if (event === "nothing") this.announce(this.words[`nothing_to_${detail.op}`]);
+    else if (event === "places") {
+      this.layers.flags.clear();
+      this.layers.kept.clear();
+      this.look.set({ shown: [] });
+    }
     if (event === "styles") this.look.compartment = Math.min(this.look.compartment, store.styles.length - 1);
     if (["styles", "patch", "scans", "elements", "shares"].includes(event)) {
       this.refreshControls();

@@ -247,7 +247,14 @@ class BenchState(t.HasTraits):
         return change
 
     def load_file(
-        self, path: Path, use: str, *, label: int | None = None, sequence: str = "", name: str | None = None
+        self,
+        path: Path,
+        use: str,
+        *,
+        label: int | None = None,
+        scale: Sequence[float] | None = None,
+        sequence: str = "",
+        name: str | None = None,
     ) -> str:
         """Load a file in template space, and return a remark for the user.
 
@@ -257,6 +264,8 @@ class BenchState(t.HasTraits):
             A NIfTI file.
         use : str
             ``mask`` (or one ``label`` of a label volume; label 0 takes each as a compartment), ``graded`` or ``scan``.
+        scale : pair of float, optional
+            The values of a graded map that mean no effect and full effect.
         sequence : str
             Of a scan: ``t1``, ``flair``, ``ct`` ...
         name : str, optional
@@ -274,8 +283,14 @@ class BenchState(t.HasTraits):
             return "; ".join(scan.notes)
         if use not in ("mask", "graded"):
             raise BywayError(Fault("load", path.name, f"use {use!r}", "mask, graded or scan"))
-        lesion = load_lesion(path, graded=use == "graded", label=label)
-        self.load_lesion(lesion)
+        ends = None if scale is None else (float(scale[0]), float(scale[1]))
+        lesion = load_lesion(path, graded=use == "graded", label=label, scale=ends)
+        if use == "graded":  # lies beside what is drawn
+            settings = replace(self.drawing.settings, effect_volume=lesion.effect_volume, scale=lesion.scale,
+                               notes=lesion.notes)  # fmt: skip
+            self._changed(self.drawing.configure("load", settings), {}, {"kind": "graded", "name": path.name})
+        else:
+            self.load_lesion(lesion)
         return "; ".join(lesion.notes)
 
     def save_masks(self, folder: Path | None = None) -> list[str]:

@@ -24,7 +24,7 @@ __all__ = ["EFFECT_MAP", "findings_spec", "load_lesion", "load_scan", "save_draw
 EFFECT_MAP = f"space-{SPACE}_desc-effect_map.nii.gz"
 
 
-def load_lesion(path: Path, *, graded: bool, label: int | None) -> Lesion:
+def load_lesion(path: Path, *, graded: bool, label: int | None, scale: tuple[float, float] | None) -> Lesion:
     """A mask, one label of a label volume, or a graded map, in template space.
 
     Raises
@@ -34,7 +34,7 @@ def load_lesion(path: Path, *, graded: bool, label: int | None) -> Lesion:
     """
     if label == 0:
         return read_labels(path)
-    return read_lesion(path, label=label, graded=graded)
+    return read_lesion(path, label=label, graded=graded, scale=scale)
 
 
 def load_scan(path: Path, sequence: str) -> Scan:

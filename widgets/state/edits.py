@@ -122,6 +122,13 @@ def _remove_compartment(drawing: Drawing, edit: Edit, scans: Scans) -> Change:
     return drawing.configure("remove_compartment", settings, indices[moved], new[moved])
 
 
+def _remove_graded(drawing: Drawing, edit: Edit, scans: Scans) -> Change | None:
+    """Take the graded effect map away."""
+    if drawing.settings.effect_volume is None:
+        return None
+    return drawing.configure("remove_graded", replace(drawing.settings, effect_volume=None, scale=None))
+
+
 LEANS_ON_SCANS = frozenset({"spread", "threshold"})
 
 EDITS: dict[str, Callable[[Drawing, Edit, Scans], Change | None]] = {
@@ -133,6 +140,7 @@ EDITS: dict[str, Callable[[Drawing, Edit, Scans], Change | None]] = {
     "compartment": _compartment,
     "add_compartment": _add_compartment,
     "remove_compartment": _remove_compartment,
+    "remove_graded": _remove_graded,
     "resize": reshape.resize,
     "fill_between": reshape.fill_between,
     "mirror": reshape.mirrored,
