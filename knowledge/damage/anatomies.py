@@ -61,6 +61,7 @@ class Anatomies:
         spread: NDArray[np.floating],
         partner: NDArray[np.integer],
         shape: tuple[int, int, int],
+        label: NDArray[np.integer] | None = None,
     ) -> NDArray[np.int16]:
         """Displacements in whole voxels.
 
@@ -76,6 +77,9 @@ class Anatomies:
             The element on the other side.
         shape : tuple of int
             Shape of the grid; its middle along the first axis is the midline.
+        label : (E,) int array, optional
+            What seeds each element's own part; its position where None. With labels that come of the elements' ids,
+            one element more or less leaves the draws of the others as they are.
 
         Returns
         -------
@@ -85,9 +89,9 @@ class Anatomies:
         rng = np.random.default_rng(self.seed)
         nodes = tuple(int(np.ceil(n / _NODE)) + 3 for n in shape)
         field = rng.standard_normal((3, int(np.prod(nodes)), half), np.float32)
-        own = rng.standard_normal((3, len(partner), half), np.float32)
         shift = rng.standard_normal((3, half), np.float32) * np.float32(self.jitter_mm)
         turn = rng.standard_normal((3, half), np.float32) * np.float32(np.deg2rad(self.jitter_deg))
+        own = self._own(np.union1d(element, partner[element]), len(partner), label)
         middle = (np.array(shape) - 1) / 2.0
 
         limit = self.reach(spread).astype(np.float32)[:, None]
@@ -113,6 +117,17 @@ class Anatomies:
                     np.negative(move, out=move)
                 out[axis, :, half * mirrored : half * mirrored + count] = move[:, :count]
         return out.transpose(2, 1, 0)
+
+    def _own(
+        self, elements: NDArray[np.integer], count: int, label: NDArray[np.integer] | None
+    ) -> NDArray[np.float32]:
+        """Own part of the displacement of some elements, (3, E, half); zero for the others."""
+        half = (self.draws + 1) // 2
+        own = np.zeros((3, count, half), np.float32)
+        for element in elements:
+            seed = int(element if label is None else label[element])
+            own[:, element] = np.random.default_rng([self.seed, 2, seed]).standard_normal((3, half), np.float32)
+        return own
 
     def reach(self, spread: NDArray[np.floating]) -> NDArray[np.float64]:
         """Longest displacement along an axis, voxels, that is possible for a spread (voxels); longer ones are cut."""

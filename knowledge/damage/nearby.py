@@ -156,7 +156,7 @@ class NearSample:
     def offsets(self, anatomies: Anatomies, sample: Sample) -> NDArray[np.int64]:
         """Displacement of each mover in each draw, (M, C), in steps of the flat padded box."""
         move = anatomies.displacements(
-            self.mover_centre, self.mover_element, self.mover_spread, sample.partner, sample.shape
+            self.mover_centre, self.mover_element, self.mover_spread, sample.partner, sample.shape, sample.label
         )
         along_x, along_y, along_z = move.T.astype(np.int64)
         return np.ascontiguousarray(((along_x * self.shape[1] + along_y) * self.shape[2] + along_z).T)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import zlib
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -39,6 +40,8 @@ class Sample:
         The element on the other side; itself where there is none.
     spread_mm : (E,) float32
         Between-subject spread of each element, mm.
+    label : (E,) uint32
+        A number that comes of each element's id alone, so that its draws do not depend on which others there are.
     """
 
     shape: tuple[int, int, int]
@@ -51,6 +54,7 @@ class Sample:
     group_weight: NDArray[np.float32] = field(repr=False)
     partner: NDArray[np.int32] = field(repr=False)
     spread_mm: NDArray[np.float32] = field(repr=False)
+    label: NDArray[np.uint32] = field(repr=False)
 
     @classmethod
     def build(
@@ -109,6 +113,7 @@ class Sample:
             group_weight=np.concatenate([np.empty(0, np.float32), *weights]),
             partner=_partners(geometry),
             spread_mm=geometry.spread_mm,
+            label=np.array([zlib.crc32(element.encode()) for element in geometry.element_ids], np.uint32),
         )
 
 

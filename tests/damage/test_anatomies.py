@@ -70,3 +70,12 @@ def test_levels_stand_for_a_normal_distribution(count):
     np.testing.assert_allclose(levels, -levels[::-1], atol=1e-12)
     if count > 1:
         assert np.sqrt(np.mean(levels**2)) == pytest.approx(1)
+
+
+def test_an_element_more_leaves_the_others_draws() -> None:
+    """With labels of their own, elements move alike whatever stands before them; registration moves alike too."""
+    anatomies = Anatomies(20, 0, 1.0, 1.0)
+    centre = np.array([[60.0, 100.0, 90.0], [120.0, 80.0, 70.0]])
+    two = anatomies.displacements(centre, np.array([0, 1]), np.full(2, 4.0), np.arange(2), SHAPE, np.array([7, 9]))
+    three = anatomies.displacements(centre, np.array([1, 2]), np.full(2, 4.0), np.arange(3), SHAPE, np.array([5, 7, 9]))
+    np.testing.assert_array_equal(two, three)
