@@ -7,6 +7,7 @@ from typing import Any, ClassVar
 
 import numpy as np
 import traitlets as t
+from pydantic import ValidationError
 
 from byway.knowledge.cases.layers import read_models
 from byway.knowledge.faults import BywayError, CaseError, Fault, GraphError
@@ -171,6 +172,8 @@ class EditingPanel(Panel):
         except BywayError as error:
             self._tell("fault", text=str(error), of=content.get("kind"))
             raise
+        except (LookupError, ValidationError) as error:
+            raise ValueError(f"{content.get('kind')}: {error}") from error
 
     def _tell(self, kind: str, arrays: Mapping[str, Any] | None = None, **fields: Any) -> None:
         message, buffers = send(kind, arrays, **fields)
