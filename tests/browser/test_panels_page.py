@@ -213,6 +213,18 @@ def test_findings_by_keyboard(page: Any) -> None:
     assert [f.grade for f in state.findings if f.sign == "repetition_loss"] == ["severe"]
 
 
+def test_a_finding_has_a_date(page: Any) -> None:
+    """A date typed under a recorded sign reaches its finding, and changes no grade."""
+    state = toy_state()
+    bare = Bare(page, FindingsPanel(state))
+    page.evaluate(OPEN_ALL)
+    page.locator("[data-sign=repetition_loss] input[type=date]").fill("2026-11-03")
+    page.locator("[data-sign=repetition_loss] input[type=date]").blur()
+    bare.carry()
+    (finding,) = (f for f in state.findings if f.sign == "repetition_loss")
+    assert (finding.date, finding.grade) == ("2026-11-03", "moderate")
+
+
 def test_keys_stay_in_the_panel(page: Any) -> None:
     """Keys typed into a search do not reach the notebook's shortcuts."""
     Bare(page, FindingsPanel(toy_state()))

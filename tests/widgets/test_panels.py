@@ -163,6 +163,14 @@ class TestFindings:
         panel._heard(None, {"kind": "finding", "sign": "amnesia", "side": "none", "grade": "severe"}, [])
         assert state.findings[0].date == "2026-11-03"
 
+    def test_how_when_and_by_whom(self, state: BenchState) -> None:
+        """Test, date and author can be given; an empty one is none."""
+        panel = FindingsPanel(state)
+        told = {"kind": "finding", "sign": "repetition_loss", "side": "none", "grade": "moderate"}
+        panel._heard(None, {**told, "test": "sentences", "date": "2026-11-03", "by": ""}, [])
+        (finding,) = (f for f in state.findings if f.sign == "repetition_loss")
+        assert (finding.test, finding.date, finding.by) == ("sentences", "2026-11-03", None)
+
     @pytest.mark.parametrize("bad", [{"grade": "huge"}, {"side": "up"}, {"grade": None}])
     def test_a_bad_message_changes_nothing(self, state: BenchState, bad: dict[str, str]) -> None:
         """A grade or side that does not exist becomes a notice; the findings hold."""

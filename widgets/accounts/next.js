@@ -8,6 +8,13 @@ function bitsBar(bits, most) {
 
 /** Which account would lead after an outcome, by its number and title, and how likely it would then be. */
 function leader(row, outcome, kinds, words) {
+  const then = row[`then_${outcome}`] || [];
+  const strip = h("span", { class: "bw-mini", role: "img", "aria-label": then.slice(0, 4).map((p, i) => `${i + 1}: ${percent(p)}`).join(", ") },
+    then.map((p, i) => h("i", { class: "bw-share", "data-rank": i < 6 ? i + 1 : "rest", style: `flex-grow:${Math.max(p, 0.002)}` })));
+  return [leaderWords(row, outcome, kinds, words), strip];
+}
+
+function leaderWords(row, outcome, kinds, words) {
   const rank = row[`rank_if_${outcome}`];
   const chance = number(`next_tests/${row.sign}@${row.side}/p_if_${outcome}`, row[`p_if_${outcome}`], percent(row[`p_if_${outcome}`]));
   const title = row[`if_${outcome}`];

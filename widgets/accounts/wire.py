@@ -95,8 +95,17 @@ def _next_tests(explanation: Any) -> list[dict[str, Any]]:
     rank = {account.title: i for i, account in reversed(list(enumerate(explanation.accounts)))}
     table = explanation.next_tests
     rows = _rows(table[table["bits"] >= LEAST_BITS].head(MOST_NEXT))
-    return [{**row, "rank_if_present": rank.get(row["if_present"]), "rank_if_absent": rank.get(row["if_absent"])}
-            for row in rows]  # fmt: skip
+    return [{**row, "rank_if_present": rank.get(row["if_present"]), "rank_if_absent": rank.get(row["if_absent"]),
+             **_rankings(explanation, f"{row['sign']}@{row['side']}")} for row in rows]  # fmt: skip
+
+
+def _rankings(explanation: Any, sign_id: str) -> dict[str, list[float]]:
+    """Posterior of every account shown, were the sign found and were it not."""
+    ahead = explanation.outlook
+    row = ahead.signs.index(sign_id)
+    place = {group.scenario: i for i, group in enumerate(explanation.grouping.groups)}
+    order = [place[account.scenario] for account in explanation.accounts]
+    return {"then_present": ahead.if_present[row, order].tolist(), "then_absent": ahead.if_absent[row, order].tolist()}
 
 
 def _next_images(table: pd.DataFrame, graph: Any) -> list[dict[str, Any]]:

@@ -15,6 +15,8 @@ from byway.widgets.panel import Panel
 __all__ = ["FindingsPanel"]
 
 NOT_TESTED = "not_tested"
+CIRCUMSTANCES = ("test", "date", "by")
+MOST_TEXT = 120
 
 
 class FindingsPanel(Panel):
@@ -69,8 +71,11 @@ class FindingsPanel(Panel):
         if grade not in get_args(FoundGrade) or side not in get_args(BodySide):
             raise BywayError(Fault("finding", sign, f"grade {grade!r}, side {side!r}", "a grade and side of the list"))
         old = [f for f in self.state.findings if (f.sign, f.side) == (sign, side)]
-        kept = {name: getattr(old[-1], name) for name in ("test", "date", "by")} if old else {}
-        self.state.set_finding(Finding(sign, side, grade, **kept))
+        told: dict[str, str | None] = {name: getattr(old[-1], name) if old else None for name in CIRCUMSTANCES}
+        for name in CIRCUMSTANCES:
+            if name in content:
+                told[name] = str(content[name])[:MOST_TEXT] if content[name] else None
+        self.state.set_finding(Finding(sign, side, grade, **told))
 
     def on_refused(self) -> None:
         """Show the findings that hold."""

@@ -1,5 +1,5 @@
 // Findings: every sign with what was seen of it. Not tested, absent and present stay three different things.
-import { fill, frame, h, keep, mark, number, percent, say, segmented, setNumber, watch } from "../front/kit.js";
+import { fill, frame, freshId, h, keep, mark, number, percent, say, segmented, setNumber, watch } from "../front/kit.js";
 import { grouped, matches } from "./search.js";
 
 const GRADES = ["not_tested", "absent", "mild", "moderate", "severe"];
@@ -49,14 +49,33 @@ function details(sign, words) {
     h("summary", {}, words.how_to_examine), h("p", {}, sign.examination), list);
 }
 
+/** How, when and by whom a finding was made; shown for what is recorded. */
+function circumstances(sign, side, words, tell) {
+  const inputs = ["test", "date", "by"].map((name) => {
+    const id = freshId(name);
+    const input = h("input", { id, class: "bw-search", type: name === "date" ? "date" : "text", maxlength: 120, onchange: () => tell({ [name]: input.value.trim() || null }) });
+    return { name, input, node: h("span", { class: "bw-find-how" }, h("label", { for: id, class: "bw-soft" }, words[`how_${name}`]), input) };
+  });
+  const node = h("div", { class: "bw-find-hows" }, side === "none" ? null : h("span", { class: "bw-find-side" }, words[`body_${side}`]), inputs.map((each) => each.node));
+  node.change = (finding) => {
+    node.hidden = !finding;
+    for (const { name, input } of inputs) if (document.activeElement !== input) input.value = (finding && finding[name]) || "";
+  };
+  return node;
+}
+
 function makeSign(sign, words, tell) {
   const lines = new Map(sign.sides.map((side) => [side, sideLine(sign, side, words, (what) => tell(sign.key, side, what))]));
+  const hows = new Map(sign.sides.map((side) => [side, circumstances(sign, side, words, (what) => tell(sign.key, side, what))]));
+  const more = details(sign, words);
+  more.append(...hows.values());
   const node = h("li", { class: "bw-find-sign", "data-sign": sign.key },
-    h("div", { class: "bw-find-name" }, sign.name), [...lines.values()], details(sign, words));
+    h("div", { class: "bw-find-name" }, sign.name), [...lines.values()], more);
   node.change = (findings, expected, onlyRecorded) => {
     for (const [side, line] of lines) {
       const id = `${sign.key}@${side}`;
       line.change(findings[id], expected[id], id);
+      hows.get(side).change(findings[id]);
       line.hidden = onlyRecorded && !findings[id];
     }
   };
@@ -94,8 +113,8 @@ function render({ model, el }) {
     kept.add(id);
     const findings = { ...model.get("findings") };
     if (what.grade === "not_tested") delete findings[id];
-    else findings[id] = { ...(findings[id] || {}), ...what };
-    model.send({ kind: "finding", sign, side, ...what });
+    else if (what.grade || findings[id]) findings[id] = { ...(findings[id] || {}), ...what };
+    if (what.grade || findings[id]) model.send({ kind: "finding", sign, side, grade: findings[id] ? findings[id].grade : "not_tested", ...what });
     draw(findings);
   }
 
