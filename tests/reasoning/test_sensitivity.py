@@ -23,7 +23,9 @@ def test_every_change_is_made() -> None:
 def test_priors_are_changed_in_odds() -> None:
     """Doubling the odds of right dominance, 4 : 96, gives 8 : 96: the same as a case that sets 1/13."""
     explanation = toy_explanation(CLEAR, FINDINGS)
-    row = sensitivity(explanation).table.set_index("change").loc["twice as likely beforehand that language is led by the right hemisphere"]
+    row = sensitivity(explanation).table.set_index("change").loc[
+        "twice as likely beforehand that language is led by the right hemisphere"
+    ]
     again = toy_explanation(CLEAR, FINDINGS, priors={"dominance": 8 / 104})
     assert row["p_usual_first"] == pytest.approx(again.accounts[0].posterior, rel=1e-6)
 
