@@ -7,6 +7,7 @@ from pathlib import Path
 import nibabel as nib
 import numpy as np
 import pytest
+from scipy.spatial import cKDTree
 from tract_files import NATIVE, invented_bundle, write_trk, write_trx
 
 from byway.knowledge.faults import BywayError, ImageError
@@ -109,9 +110,9 @@ def test_a_map_becomes_streamlines_that_fill_it(template: Template, tmp_path: Pa
     grid[:3, 3] = [-98, -134, -72]
     data = np.zeros((99, 117, 95), np.float32)
     course = template.core_lines[SEGMENT]
-    places = np.argwhere(np.ones(data.shape, bool)) * 2.0 + grid[:3, 3]
-    near = np.array([np.linalg.norm(places - point, axis=1) for point in course[::6]]).min(axis=0)
-    data.reshape(-1)[:] = np.clip(1.2 - near / 7.0, 0, 1)
+    places = np.indices(data.shape).reshape(3, -1).T * 2.0 + grid[:3, 3]
+    near = cKDTree(course).query(places, distance_upper_bound=9.0)[0]
+    data.reshape(-1)[:] = np.clip(1.2 - np.minimum(near, 9.0) / 7.0, 0, 1)
     nib.save(nib.Nifti1Image(data * 100, grid), tmp_path / "tract.nii.gz")
     own = own_anatomy(template, mapped(tmp_path, f"{SEGMENT},tract.nii.gz,,0.3"), name="site atlas")
     lines = segment_lines(own.template, SEGMENT)
