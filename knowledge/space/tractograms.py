@@ -1,7 +1,8 @@
 """Tractogram files: TRK, TCK and TRX read one streamline at a time, in a bounded amount of memory.
 
 The file is never held whole. Of more than ``limit`` streamlines an evenly spaced part is kept; streamlines that hold
-a number that is not finite are left out; both are counted in the notes. Points are RAS+ mm of the file's own space.
+a number that is not finite are left out; both are counted in the notes. A streamline of more than 2,000 points is
+resampled at 0.5 mm. Points are RAS+ mm of the file's own space.
 """
 
 from __future__ import annotations
@@ -21,6 +22,7 @@ from nibabel.streamlines.tractogram_file import HeaderError, HeaderWarning
 from numpy.typing import NDArray
 
 from byway.knowledge.faults import Fault, ImageError
+from byway.knowledge.space.curves import resample
 
 __all__ = ["KEPT", "SUFFIXES", "Tractogram", "read_tractogram"]
 
@@ -30,6 +32,8 @@ KEPT = 3000
 
 _OUTSIDE_SHARE = 0.05
 _LONGEST_MM = 1000.0
+_MANY_POINTS = 2000
+_FINE_MM = 0.5
 
 
 @dataclass(frozen=True)
@@ -193,7 +197,7 @@ def _gathered(path: Path, streamlines: Iterator[NDArray[np.floating]], volume: V
         if volume is not None:
             outside += _outside(line, volume)
         if number % stride == 0:
-            kept.append(line)
+            kept.append(line if len(line) <= _MANY_POINTS else resample(line, _FINE_MM).astype(np.float32))
             if len(kept) > limit:
                 kept = kept[::2]
                 stride *= 2

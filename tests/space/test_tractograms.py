@@ -131,6 +131,14 @@ def test_other_files_are_refused(tmp_path: Path) -> None:
         read_tractogram(tmp_path / "a.trk")
 
 
+def test_streamlines_of_very_many_points_are_resampled(tmp_path: Path) -> None:
+    """50,000 points over 100 mm become points 0.5 mm apart, from the same first to the same last."""
+    line = np.linspace([-60, -40, 0], [-60, 60, 0], 50_000).astype(np.float32)
+    read = read_tractogram(write_trx(tmp_path / "a.trx", [line])).streamlines[0]
+    assert len(read) == 201
+    np.testing.assert_allclose(read[[0, -1]], line[[0, -1]], atol=1e-4)
+
+
 def test_five_million_points_take_at_most_twice_the_file(tmp_path: Path) -> None:
     """Reading a TRK of 5 million points raises the peak memory of a process by less than twice the file's size."""
     path = write_big_trk(tmp_path / "big.trk", 50_000, 100)
