@@ -1,4 +1,4 @@
-"""The command line: ``byway open | explain | course | similar | damage | new | graph | archive``.
+"""The command line: ``byway open | explain | course | similar | damage | anatomy | new | graph | archive``.
 
 Thin: each command calls one room. Results go to stdout, progress and notes to stderr. Bad input prints one line and
 exits with 2.
@@ -12,7 +12,8 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from byway.knowledge.cases import commands
-from byway.knowledge.faults import BywayError
+from byway.knowledge.cases.own import OwnLayer, folder_layer
+from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.words import word
 
 __all__ = ["main"]
@@ -20,6 +21,15 @@ __all__ = ["main"]
 
 def _help(key: str) -> str:
     return word(f"command.{key}")
+
+
+def _layer(given: argparse.Namespace) -> OwnLayer | None:
+    """The own anatomy that the options name; options that lead it to the template mean nothing without it."""
+    if given.anatomy is not None:
+        return folder_layer(given.anatomy, affine=given.affine, displacement=given.displacement, axes=given.axes)
+    if given.affine or given.displacement or given.axes:
+        raise BywayError(Fault("own-transform", "damage", "a transform without --anatomy", "a folder of own anatomy"))
+    return None
 
 
 def _parser() -> argparse.ArgumentParser:
@@ -66,7 +76,17 @@ def _parser() -> argparse.ArgumentParser:
     one.add_argument("mask", type=Path, metavar="MASK", help=_help("damage_mask"))
     one.add_argument("--label", type=int, help=_help("damage_label"))
     one.add_argument("--csv", type=Path, metavar="FILE", help=_help("damage_csv"))
-    one.set_defaults(run=lambda a: commands.damage_of_mask(a.mask, label=a.label, csv=a.csv))
+    one.add_argument("--anatomy", type=Path, metavar="FOLDER", help=_help("damage_anatomy"))
+    one.add_argument("--affine", type=Path, metavar="FILE", help=_help("damage_affine"))
+    one.add_argument("--displacement", type=Path, metavar="FILE", help=_help("damage_displacement"))
+    one.add_argument("--axes", choices=("ras", "lps"), help=_help("damage_axes"))
+    one.set_defaults(run=lambda a: commands.damage_of_mask(a.mask, label=a.label, csv=a.csv, layer=_layer(a)))
+
+    anatomy = add("anatomy").add_subparsers(dest="what", required=True, metavar="WHAT")
+    one = add("compare", anatomy, "anatomy_compare")
+    one.add_argument("case", type=Path, metavar="CASE", help=_help("explain_case"))
+    one.add_argument("--csv", type=Path, metavar="FILE", help=_help("damage_csv"))
+    one.set_defaults(run=lambda a: commands.anatomy_compare(a.case, csv=a.csv))
 
     one = add("new")
     one.add_argument("mask", type=Path, metavar="MASK", help=_help("damage_mask"))

@@ -27,7 +27,8 @@ MOST_FILES = 10_000
 MOST_BYTES = 2_000_000_000
 MOST_RATIO = 200.0
 MOST_MANIFEST = 5_000_000
-KEPT = (".yaml", ".json", ".jsonl", ".nii", ".gz", ".md", ".csv", ".html", ".pdf")
+KEPT = (".yaml", ".json", ".jsonl", ".nii", ".gz", ".md", ".csv", ".tsv", ".txt", ".html", ".pdf",
+        ".trk", ".tck", ".trx")  # fmt: skip
 
 
 def pack_case(folder: Path, archive: Path, *, reviewed: bool = False) -> list[str]:

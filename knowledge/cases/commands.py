@@ -14,27 +14,30 @@ from pathlib import Path
 import pandas as pd
 
 from byway.knowledge.atomic import write_text
+from byway.knowledge.cases.anatomies import anatomies_of_case
 from byway.knowledge.cases.archive import pack_case, unpack_case
 from byway.knowledge.cases.atlas import write_atlas
 from byway.knowledge.cases.case import open_case
 from byway.knowledge.cases.course import course_of_case
-from byway.knowledge.cases.desk import desk_for
-from byway.knowledge.cases.explaining import damage_of, explain
+from byway.knowledge.cases.desk import desk_for, desk_own
+from byway.knowledge.cases.explaining import damage_of, desk_of, explain
 from byway.knowledge.cases.files import case_path
 from byway.knowledge.cases.making import new_case
+from byway.knowledge.cases.own import OwnLayer
 from byway.knowledge.cases.pages import Note, Pages
 from byway.knowledge.cases.pdf import write_pdf
 from byway.knowledge.cases.privacy import identifying_traces, traces_table
 from byway.knowledge.cases.report import write_report
 from byway.knowledge.cases.similar import similar_to
 from byway.knowledge.cases.tables import write_tables
-from byway.knowledge.cases.wording import explanation_text
+from byway.knowledge.cases.wording import explanation_text, whose_words
 from byway.knowledge.faults import BywayError, CaseError, Fault
 from byway.knowledge.graph import commands as graph_commands
 from byway.knowledge.lesion.images import read_lesion
 from byway.knowledge.words import word
 
 __all__ = [
+    "anatomy_compare",
     "archive_list",
     "archive_pack",
     "archive_unpack",
@@ -179,13 +182,15 @@ def similar(path: Path, folder: Path) -> int:
     return 0
 
 
-def damage_of_mask(path: Path, *, label: int | None, csv: Path | None) -> int:
-    """Print what a mask reaches."""
+def damage_of_mask(path: Path, *, label: int | None, csv: Path | None, layer: OwnLayer | None = None) -> int:
+    """Print what a mask reaches, by the template or by own anatomy where it is given."""
     lesion = read_lesion(path, label=label)
-    desk = desk_for()
+    desk = desk_own(desk_for(), () if layer is None else (layer,))
     table = damage_of(lesion, desk=desk)
     for note in lesion.notes:
         _say(f"{path.name}: {note}")
+    for note in desk.notes:
+        _say(note)
     if csv is not None:
         write_text(csv, table.to_csv(index=False))
         _say(f"table written: {csv}")
@@ -193,7 +198,23 @@ def damage_of_mask(path: Path, *, label: int | None, csv: Path | None) -> int:
     with pd.option_context("display.width", 200, "display.max_rows", None, "display.max_colwidth", 60):
         print(hit.round(3).to_string(index=False))
     print(f"\nvolume_ml {lesion.volume_ml:.1f}   uncharted_share {table.attrs['uncharted_share']:.2f}")
-    print(word("command.template_anatomy", whose=", ".join(sorted(set(table["anatomy"])))))
+    print(word("command.template_anatomy", whose=whose_words(table["anatomy"])))
+    _say(word("command.caution"))
+    return 0
+
+
+def anatomy_compare(path: Path, *, csv: Path | None) -> int:
+    """Print what the lesion of a case does by the template's anatomy and by the case's own."""
+    case = open_case(path)
+    table = anatomies_of_case(case)
+    for note in desk_of(case).notes:
+        _say(note)
+    if csv is not None:
+        write_text(csv, table.to_csv(index=False))
+        _say(f"table written: {csv}")
+    shown = table.drop(columns=["kind", "anatomy", "side", "name"]).round(3)
+    with pd.option_context("display.width", 200, "display.max_rows", None, "display.max_colwidth", 60):
+        print(shown.to_string(index=False) if len(table) else word("command.anatomy_none"))
     _say(word("command.caution"))
     return 0
 

@@ -8,8 +8,9 @@ from pathlib import Path
 import pandas as pd
 
 from byway.knowledge.cases.case import Case
-from byway.knowledge.cases.desk import Desk, desk_for
+from byway.knowledge.cases.desk import Desk, desk_for, desk_own
 from byway.knowledge.cases.files import inside
+from byway.knowledge.cases.own import layers_of
 from byway.knowledge.damage.coverage import uncharted_share
 from byway.knowledge.damage.ensemble import Ensemble, EnsembleSettings, Progress, ensemble
 from byway.knowledge.damage.point import Damage, point_damage
@@ -28,8 +29,15 @@ def element_names(graph: Graph) -> dict[str, str]:
 
 
 def desk_of(case: Case, *, progress: bool = True) -> Desk:
-    """The desk with the overlays that the case names."""
-    return desk_for([inside(case.folder, name) for name in case.spec.overlays], progress=progress)
+    """The desk with the overlays that the case names, on the case's own anatomy where it brings any.
+
+    Raises
+    ------
+    GraphError, CaseError, ImageError
+        An overlay, or a file of the own anatomy, cannot be used.
+    """
+    desk = desk_for([inside(case.folder, name) for name in case.spec.overlays], progress=progress)
+    return desk_own(desk, layers_of(case.spec.anatomy, case.folder))
 
 
 def reckon_damage(
@@ -100,7 +108,7 @@ def explain(
     case : Case
         From :func:`~byway.knowledge.cases.case.open_case`.
     desk : Desk, optional
-        Graph and geometry to use; by default the curated ones with the overlays that the case names.
+        Graph and geometry to use; by default the curated ones with the overlays and the own anatomy of the case.
     draws, seed : int
         Virtual anatomies to average over; the same numbers each time.
     progress : callable, optional

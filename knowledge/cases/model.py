@@ -12,6 +12,7 @@ from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, model_valida
 
 __all__ = [
     "SCHEMA_VERSION",
+    "AnatomySpec",
     "Asymmetry",
     "CaseFile",
     "CompartmentSpec",
@@ -118,6 +119,35 @@ class ScanSpec(_Block):
     sequence: str = "unknown"
 
 
+class AnatomySpec(_Block):
+    """Own anatomy in the place of the template's: a folder of files, and a table of which stands for which element.
+
+    ``folder`` lies in the case folder; all other files lie in ``folder``. ``mapping`` is mapping.csv or mapping.tsv
+    where it is left out. A bundle in native space needs an ``affine`` (text, 4 x 4) or a ``displacement`` (NIfTI, mm).
+    """
+
+    name: Annotated[str, Field(min_length=1, max_length=60)]
+    kind: Literal["tract_maps", "labels", "bundles"]
+    folder: str = "anatomy"
+    mapping: str | None = None
+    affine: str | None = None
+    displacement: str | None = None
+    axes: Literal["ras", "lps"] | None = None
+    spread_mm: Annotated[float, Field(ge=0.0, le=20.0)] | None = None
+
+    @model_validator(mode="after")
+    def _transform(self) -> AnatomySpec:
+        if self.name.strip().lower() in ("", "template"):
+            raise ValueError(f"{self.name!r} does not say whose anatomy it is")
+        if self.affine and self.displacement:
+            raise ValueError("take either `affine` or `displacement`")
+        if (self.affine or self.displacement) and self.kind != "bundles":
+            raise ValueError("only bundles are led to template space; resample volumes there first")
+        if (self.displacement is None) != (self.axes is None):
+            raise ValueError("`displacement` goes with `axes`: ras or lps")
+        return self
+
+
 class VisitSpec(_Block):
     """A later time point: what was found then, and the lesion then where it was drawn anew."""
 
@@ -159,6 +189,7 @@ class CaseFile(_Block):
     findings: tuple[FindingSpec, ...] = ()
     visits: tuple[VisitSpec, ...] = ()
     asymmetries: tuple[Asymmetry, ...] = ()
+    anatomy: tuple[AnatomySpec, ...] = ()
     overlays: tuple[str, ...] = ()
     priors: dict[str, float | dict[str, float]] = {}
 

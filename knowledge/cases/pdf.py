@@ -113,14 +113,26 @@ def _head(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
 
 def _hit(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
     numbers = range(3, 7)
-    head = [w["element"], w["side"], w["kind"], w["share"], "5–95 %", w["overlap"], w["clearance"]]
+    head = [w["element"], w["side"], w["kind"], w["share"], "5–95 %", w["overlap"], w["clearance"], w["whose"]]
     rows = [ink.cells(head, numbers, head=True)]
     rows += [ink.cells([r["name"], r["side"], w["lost"] if r["kind"] == "region" else w["severed"], share(r["share"]),
-                        f"{share(r['low'])}–{share(r['high'])}", f"{r['overlap_ml']:.2f}", f"{r['clearance_mm']:.1f}"],
-                       numbers) for r in f.hit]  # fmt: skip
-    widths = [WIDTH - 262, 38, 46, 36, 54, 42, 46]
+                        f"{share(r['low'])}–{share(r['high'])}", f"{r['overlap_ml']:.2f}", f"{r['clearance_mm']:.1f}",
+                        r["anatomy"]], numbers) for r in f.hit]  # fmt: skip
+    widths = [WIDTH - 322, 38, 46, 36, 54, 42, 46, 60]
     return [ink.say(w["hit"], "heading"), ink.say(f"{w['anatomy']} {f.anatomy}. {w['interval']}", "quiet"),
-            grid(rows, widths)]  # fmt: skip
+            grid(rows, widths), *_anatomies(f, ink, w)]  # fmt: skip
+
+
+def _anatomies(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
+    if not f.anatomies:
+        return []
+    numbers = range(3, 7)
+    head = [w["element"], w["side"], w["whose"], w["by_template"], w["by_own"], w["difference"], w["apart"]]
+    rows = [ink.cells(head, numbers, head=True)]
+    rows += [ink.cells([r["name"], r["side"], r["own_anatomy"], share(r["share"]), share(r["own_share"]),
+                        signed(r["difference"]), f"{r['apart_mm']:.1f}"], numbers) for r in f.anatomies]  # fmt: skip
+    return [ink.say(w["anatomies"], "heading"), ink.say(w["anatomies_text"], "quiet"),
+            grid(rows, [WIDTH - 316, 38, 80, 50, 50, 50, 48])]  # fmt: skip
 
 
 def _profile(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import gzip
 import re
+import zipfile
 import zlib
 from collections.abc import Iterator
 from dataclasses import dataclass
@@ -33,7 +34,7 @@ PATTERNS = {
     "a title with a name": re.compile(r"\b(?:Mr|Mrs|Ms|Dr|Prof|Herr|Frau|Mme)\.? [A-Z][a-z]+"),
 }  # fmt: skip
 FREE_TEXT = ("descrip", "aux_file", "intent_name", "db_name", "data_type")
-TEXT_FILES = {".yaml", ".json", ".jsonl", ".md", ".csv"}
+TEXT_FILES = {".yaml", ".json", ".jsonl", ".md", ".csv", ".tsv", ".txt"}
 # Times of our own pages and journals are the record of who wrote when; ids and checksums are random or derived.
 OUR_FIELDS = re.compile(r'"(?:time|id|note|replaces|reply_to|process|from|indices|values)": ?(?:"[^"]*"|\d+)'
                         r"|^[0-9a-f]{8} ", re.M)  # fmt: skip
@@ -65,6 +66,8 @@ def identifying_traces(folder: Path) -> list[Trace]:
             traces += [Trace(name, "file name", kind, text) for kind, text in _matches(path.name)]
         if name.endswith((".nii", ".nii.gz")):
             traces += _in_header(path, name)
+        elif path.suffix.lower() in (".trk", ".tck", ".trx"):
+            traces += _in_tractogram(path, name)
         elif path.suffix in TEXT_FILES and path.stat().st_size <= MOST_TEXT:
             traces += _in_text(path, name)
     return traces
@@ -90,6 +93,29 @@ def _in_header(path: Path, name: str) -> list[Trace]:
     for extension in getattr(header, "extensions", ()):
         text = str(extension.get_content())[:60]
         traces.append(Trace(name, f"extension {extension.get_code()}", "a header extension", text))
+    return traces
+
+
+def _in_tractogram(path: Path, name: str) -> list[Trace]:
+    """Free text that the header of streamlines may hold: commands and paths of the tool that made them, mostly."""
+    try:
+        if path.suffix.lower() == ".trx":
+            if path.is_dir():
+                return []
+            with zipfile.ZipFile(path) as archive:
+                lines = [archive.read("header.json")[:MOST_TEXT].decode("utf-8", "replace")]
+            return [Trace(name, "header.json", kind, text) for line in lines for kind, text in _matches(line)]
+        with path.open("rb") as stream:
+            head = stream.read(1000 if path.suffix.lower() == ".trk" else 65_536)
+    except (OSError, KeyError, zipfile.BadZipFile) as error:
+        return [Trace(name, "header", "an unreadable header", str(error).splitlines()[0])]
+    if path.suffix.lower() == ".trk":  # reserved and property fields, which tools fill as they like
+        return [Trace(name, "header", kind, text) for kind, text in _matches(head.decode("latin-1").replace("\0", " "))]
+    traces = []
+    for line in head.partition(b"\nEND")[0].decode("utf-8", "replace").splitlines()[1:]:
+        key, _, value = line.partition(": ")
+        if key not in ("count", "total_count", "datatype", "file"):
+            traces.append(Trace(name, key, "free text in the header", value.strip()[:200]))
     return traces
 
 

@@ -12,7 +12,9 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
+from byway.knowledge.cases.anatomies import anatomies_of
 from byway.knowledge.cases.case import Case
+from byway.knowledge.cases.explaining import desk_of
 from byway.knowledge.cases.pages import Note, Pages, thread
 from byway.knowledge.cases.pictures import SliceView, slice_views
 from byway.knowledge.cases.standing import team_standing
@@ -73,6 +75,7 @@ class ReportFacts:
     standing: list[Row]
     reasons: list[tuple[str, str, str, str]]
     anatomy: str
+    anatomies: list[Row]
     made: str
     versions: dict[str, str]
     graph_hash: str
@@ -133,6 +136,7 @@ def facts_of(
         reasons=[(titles[account], author, said.stands, said.reason) for account, people in standings.items()
                  for author, said in sorted(people.items())],
         anatomy=anatomy_words(explanation),
+        anatomies=rows_of(anatomies_of(lesion, desk_of(case))) if case.spec.anatomy else [],
         made=datetime.now(UTC).date().isoformat(),
         versions=versions(),
         graph_hash=graph.content_hash[:12],

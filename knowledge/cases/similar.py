@@ -106,6 +106,7 @@ def similar_to(case: Case, folder: str | Path, *, desk: Desk | None = None) -> p
         not be read, with the reason.
     """
     desk, place = desk or desk_of(case), Path(folder)
+    desk = desk.usual or desk  # one person's own anatomy says nothing of the others'
     others, left_out = {}, []
     for path in sorted(place.rglob("case.yaml")):
         if path.resolve() == case.path.resolve() or any(part.startswith(".") for part in path.relative_to(place).parts):

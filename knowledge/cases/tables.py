@@ -7,6 +7,7 @@ from pathlib import Path
 import pandas as pd
 
 from byway.knowledge.atomic import write_text
+from byway.knowledge.cases.anatomies import anatomies_of_case
 from byway.knowledge.cases.case import Case
 from byway.knowledge.cases.course import Course
 from byway.knowledge.cases.pages import Note, Pages
@@ -58,6 +59,7 @@ def case_tables(case: Case, explanation: Explanation) -> dict[str, pd.DataFrame]
         "counterfactuals": pd.concat([a.counterfactuals.assign(account=a.key) for a in accounts], ignore_index=True),
         "next_tests": explanation.next_tests,
         "next_images": explanation.next_images,
+        **({"anatomies": anatomies_of_case(case)} if case.spec.anatomy else {}),
         "standing": team,
         "notes": pd.DataFrame([(n.id, n.author, n.time, n.anchor.kind, n.anchor.key, n.reply_to, " ".join(n.tags),
                                 settled.get(origins.get(n.id, n.id), False), n.text) for n in notes],

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterable
 
 from byway.knowledge.cases.case import Case
 from byway.knowledge.reasoning.accounts import Account
 from byway.knowledge.reasoning.explain import Explanation
 
-__all__ = ["anatomy_words", "explanation_text"]
+__all__ = ["anatomy_words", "explanation_text", "whose_words"]
 
 SHOWN_ACCOUNTS = 4
 SHOWN_ROWS = 8
@@ -16,10 +17,25 @@ SHOWN_ROWS = 8
 
 def anatomy_words(explanation: Explanation) -> str:
     """Whose anatomy the damage rests on, in words."""
-    whose = sorted(set(explanation.damage["anatomy"])) if "anatomy" in explanation.damage else []
-    others = [name for name in whose if name != "template"]
-    words = ["the template's, not this person's"] if "template" in whose else []
-    return " and ".join([*others, *words]) or "not stated"
+    return whose_words(explanation.damage["anatomy"]) if "anatomy" in explanation.damage else "not stated"
+
+
+def whose_words(anatomy: Iterable[str]) -> str:
+    """Whose anatomy elements rest on, and how many on each own one.
+
+    >>> whose_words(["template", "P-07", "template"])
+    "P-07 (1 element) and the template's, not this person's (2 elements)"
+    """
+    count = Counter(anatomy)
+    usual = count.pop("template", 0)
+    words = [f"{name} ({_elements(n)})" for name, n in sorted(count.items())]
+    if usual:
+        words.append("the template's, not this person's" + (f" ({_elements(usual)})" if count else ""))
+    return " and ".join(words) or "not stated"
+
+
+def _elements(count: int) -> str:
+    return f"{count} element{'s' if count != 1 else ''}"
 
 
 def explanation_text(case: Case, explanation: Explanation) -> str:
@@ -29,14 +45,16 @@ def explanation_text(case: Case, explanation: Explanation) -> str:
     if spec.invented:
         lines.append("Invented data.")
     lines.append(f"{spec.stage} {spec.cause}; handedness {spec.person.handedness}; "
-                 f"lesion {case.lesion.volume_ml:.1f} ml; uncharted_share {explanation.uncharted_share:.2f}")  # fmt: skip
+                 f"lesion {case.lesion.volume_ml:.1f} ml; "
+                 f"uncharted_share {explanation.uncharted_share:.2f}")  # fmt: skip
     lines += [f"note: {note}" for note in case.lesion.notes]
     lines += ["", "What is hit", "-----------"]
     hit = explanation.damage[explanation.damage["share"] >= 0.02].head(SHOWN_ROWS)
     for row in hit.itertuples():
         word = "lost" if row.kind == "region" else "severed"
+        whose = "" if row.anatomy == "template" else f", by {row.anatomy}"
         lines.append(
-            f"  {row.share:5.2f} ({row.low:.2f}-{row.high:.2f}) {word:8} {row.name}, {row.side} [{row.element}]"
+            f"  {row.share:5.2f} ({row.low:.2f}-{row.high:.2f}) {word:8} {row.name}, {row.side} [{row.element}]{whose}"
         )
     lines += ["", "Accounts", "--------"]
     for rank, account in enumerate(explanation.accounts[:SHOWN_ACCOUNTS], start=1):
