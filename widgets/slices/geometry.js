@@ -110,7 +110,8 @@ export class Grid {
 export class Sight {
   constructor() {
     this.zoom = 1;
-    this.centre = null;
+    this.centre = [0, 0];
+    this.off = true; // off centre: the next fit brings it to the middle
     this.fit = 1;
     this.flip = 1;
     this.middle = [0, 0];
@@ -121,7 +122,8 @@ export class Sight {
     this.middle = [width / 2, height / 2];
     this.flip = flip;
     this.fit = Math.max(0.05, Math.min((width - 2 * margin) / (box[1] - box[0]), (height - 2 * margin) / (box[3] - box[2])));
-    if (!this.centre) this.centre = [(box[0] + box[1]) / 2, (box[2] + box[3]) / 2];
+    if (this.off) this.centre = [(box[0] + box[1]) / 2, (box[2] + box[3]) / 2];
+    this.off = false;
   }
 
   get scale() {
@@ -158,6 +160,6 @@ export class Sight {
 
   reset() {
     this.zoom = 1;
-    this.centre = null;
+    this.off = true;
   }
 }

@@ -114,7 +114,7 @@ export class Projection {
     const ratio = Math.min(window.devicePixelRatio || 1, 3);
     const plane = look.project;
     [this.canvas.width, this.canvas.height] = [Math.round(box.width * ratio), Math.round(box.height * ratio)];
-    this.sight.centre = null;
+    this.sight.off = true;
     this.sight.resize(this.canvas.width, this.canvas.height, store.grid.frame(plane), flipOf(plane, radiological), 24 * ratio);
     const ctx = this.canvas.getContext("2d", { alpha: false });
     ctx.fillStyle = FILM;
