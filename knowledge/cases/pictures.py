@@ -17,8 +17,9 @@ from numpy.typing import NDArray
 
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.grid import TEMPLATE_GRID
+from byway.knowledge.space.template import template_volume
 
-__all__ = ["SliceView", "encode_png", "slice_views"]
+__all__ = ["SliceStrip", "SliceView", "encode_png", "lesion_slices", "slice_views"]
 
 Plane = Literal["axial", "coronal", "sagittal"]
 AXIS: dict[Plane, int] = {"axial": 2, "coronal": 1, "sagittal": 0}
@@ -114,3 +115,31 @@ def slice_views(background: NDArray[np.floating], lesion: Lesion, extra: int = 2
         uri = "data:image/png;base64," + base64.b64encode(encode_png(pixels)).decode("ascii")
         views.append(SliceView(plane, at, pixels.shape[1], pixels.shape[0], uri))
     return views
+
+
+@dataclass(frozen=True)
+class SliceStrip:
+    """Slices side by side; in a notebook it shows itself, with L and R written on every picture that has sides."""
+
+    views: tuple[SliceView, ...]
+
+    def _repr_html_(self) -> str:
+        letter = "position:absolute;top:2px;color:#fff;font-weight:700;text-shadow:0 0 3px #000;"
+        figures = []
+        for view in self.views:
+            words = f"{view.plane}, {view.axis} = {view.at_mm:g} mm"
+            sides = "" if view.plane == "sagittal" else (
+                f'<span style="{letter}left:5px">L</span><span style="{letter}right:5px">R</span>')  # fmt: skip
+            figures.append(
+                f'<figure style="margin:0;width:180px;position:relative"><img src="{view.data_uri}" alt="{words}" '
+                f'style="width:180px;background:#000">{sides}<figcaption>{words}</figcaption></figure>'
+            )
+        return f'<div style="display:flex;flex-wrap:wrap;gap:12px;align-items:end">{"".join(figures)}</div>'
+
+    def __repr__(self) -> str:
+        return "; ".join(f"{view.plane}, {view.axis} = {view.at_mm:g} mm" for view in self.views)
+
+
+def lesion_slices(lesion: Lesion, extra: int = 0) -> SliceStrip:
+    """Slices of the template through a lesion, for a notebook: see :func:`slice_views`."""
+    return SliceStrip(tuple(slice_views(template_volume("t1"), lesion, extra)))

@@ -14,7 +14,7 @@ from toy_graph import toy_graph
 from byway.knowledge.cases.case import open_case
 from byway.knowledge.cases.files import write_case
 from byway.knowledge.cases.model import CaseFile
-from byway.knowledge.cases.pages import Note, OwnAccount, Pages, Standing
+from byway.knowledge.cases.pages import Anchor, Note, OwnAccount, Pages, Standing
 from byway.widgets.notes import NotesPanel
 from byway.widgets.state import BenchState
 from byway.widgets.state.science import NoScience
@@ -119,7 +119,8 @@ def test_every_control_has_a_name(page: Any, state: BenchState) -> None:
     for view in ("notes", "standing", "course", "versions"):
         page.click(f"[data-key={view}]")
         nameless = page.evaluate(
-            """() => [...document.querySelectorAll('button, input, select, textarea, [role=radiogroup]')].filter((e) => {
+            """() => [...document.querySelectorAll('button, input, select, textarea, [role=radiogroup]')]
+            .filter((e) => {
             const label = e.labels?.[0]?.textContent || e.getAttribute('aria-label') || e.title || e.textContent;
             return !label || !label.trim(); }).map((e) => e.outerHTML)"""
         )
@@ -139,9 +140,8 @@ def test_a_hundred_injections_stay_inert(page: Any, state: BenchState) -> None:
     assert len(set(INJECTIONS)) == 100
     pages = Pages(state.case.folder)
     for text in INJECTIONS:
-        note = Note(author=text[:80], text=f"{text}\n\n[x](javascript:window.ran=1) ![x](x)\n\n    {text}", tags=(text,),
-                    anchor={"kind": "sign", "key": text})  # fmt: skip
-        pages.put(note)
+        markdown = f"{text}\n\n[x](javascript:window.ran=1) ![x](x)\n\n    {text}"
+        pages.put(Note(author=text[:80], text=markdown, tags=(text,), anchor=Anchor(kind="sign", key=text)))
         pages.put(Standing(author=text[:80], account=text, stands="held", reason=text))
     first = OwnAccount(author="AB", title="x")
     for page_of in (first, *(OwnAccount(author="AB", title=text, text=text, replaces=first.id) for text in INJECTIONS)):
@@ -155,10 +155,9 @@ def test_a_hundred_injections_stay_inert(page: Any, state: BenchState) -> None:
     assert page.locator(".bw-note").count() == 100
     page.wait_for_timeout(200)
     assert page.evaluate("window.ran") is None
-    forbidden = "main img, main iframe, main object, main embed, main link, main style, main script, main svg[onload], main a"
-    assert page.locator(forbidden).count() == 0
+    for tag in ("img", "iframe", "object", "embed", "link", "style", "script", "a", "video", "marquee", "math"):
+        assert page.locator(f"main {tag}").count() == 0, tag
     assert page.evaluate(HANDLERS) == []
     assert page.strays == []
     assert bare.errors == []
-    assert INJECTIONS[0] in page.locator(".bw-prose").first.inner_text() or page.locator(
-        ".bw-prose", has_text=INJECTIONS[0]).count() > 0  # fmt: skip
+    assert page.locator(".bw-prose", has_text=INJECTIONS[0]).count() > 0

@@ -204,7 +204,7 @@ def _draw_until_killed(folder: str, acknowledged: str) -> None:
 def kill_and_recover(folder: Path, times: int, seed: int = 0) -> int:
     """Kill somebody who draws at a random moment, ``times`` over; return how many strokes were checked.
 
-    A command for the full count: ``python tests/widgets/test_following.py 1000``.
+    A command for the full count: ``PYTHONPATH=tests python tests/widgets/test_following.py 1000``.
     """
     rng, context, checked = random.Random(seed), multiprocessing.get_context("fork"), 0
     for i in range(times):
