@@ -12,13 +12,13 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from byway.knowledge.faults import BywayError
+from byway.knowledge.lesion.images import read_lesion
 from byway.knowledge.lesion.lesion import Compartment, Lesion
 from byway.knowledge.lesion.shapes import ellipsoid_mask, sphere_mask
 from byway.knowledge.space.grid import TEMPLATE_GRID
 from byway.widgets.state import BenchState
-from byway.widgets.state.bench_state import drawing_of
 from byway.widgets.state.casefiles import unsaved_edits
-from byway.widgets.state.drawing import Drawing
+from byway.widgets.state.drawing import Drawing, drawing_of
 from byway.widgets.state.edits import EDITS, apply_edit
 from byway.widgets.state.scans import Scans
 
@@ -39,6 +39,7 @@ solids = st.builds(
 others = st.sampled_from([
     {"op": "resize", "mm": 2, "compartment": 0}, {"op": "resize", "mm": -1, "compartment": 1},
     {"op": "mirror", "compartment": None}, {"op": "mirror", "compartment": 1}, {"op": "clear", "compartment": 0},
+    {"op": "remove_graded"},
     {"op": "compartment", "compartment": 1, "effect": 0.75, "name": "halo"},
     {"op": "add_compartment", "name": "scar", "kind": "other", "effect": 0.5},
 ])  # fmt: skip
@@ -72,6 +73,8 @@ def test_undo_and_redo_give_everything_back(scans: Scans, edits: list[dict[str, 
         elif len(drawing.history.done) > depth:
             past, future = [*past, snapshot(drawing)], []
         assert snapshot(drawing) == past[-1]
+        bits = drawing.bits
+        assert drawing.counts() == [int(np.count_nonzero(bits & drawing.bit(c))) for c in range(len(drawing.styles))]
     while drawing.undo():
         future.append(past.pop())
         assert snapshot(drawing) == past[-1]
@@ -130,6 +133,17 @@ def test_a_lesion_survives_the_drawing() -> None:
     for before, after in zip(lesion.compartments, out.compartments, strict=True):
         assert np.array_equal(before.mask, after.mask)
     assert np.array_equal(lesion.effect_map(), out.effect_map())
+
+
+def test_what_is_saved_comes_back(tmp_path: Path) -> None:
+    """Masks and graded map written to a folder are read back bit for bit, under BIDS derivative names."""
+    state = BenchState()
+    state.edit({"op": "ellipsoid", "centre_mm": [-40, 0, 20], "radii_mm": [6, 9, 5], "compartment": 0})
+    state.edit({"op": "ellipsoid", "centre_mm": [-30, 9, 20], "radii_mm": [6, 9, 5], "compartment": 1, "spare": True})
+    names = state.save_masks(tmp_path)
+    assert names == [f"space-MNI152NLin2009aSym_label-{label}_desc-drawn_mask.nii.gz" for label in ("core", "oedema")]
+    for c, name in enumerate(names):
+        assert np.array_equal(read_lesion(tmp_path / name).mask, state.drawing.bits & (1 << c) != 0)
 
 
 def test_painting_moves_a_voxel_to_the_compartment(scans: Scans) -> None:

@@ -16,7 +16,7 @@ from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.geometry import Geometry
 from byway.widgets.state.casefiles import findings_spec, load_lesion, load_scan, save_drawing, unsaved_edits
-from byway.widgets.state.drawing import Change, Drawing, Settings, Style
+from byway.widgets.state.drawing import Change, Drawing, drawing_of
 from byway.widgets.state.edits import LEANS_ON_SCANS, apply_edit, bytes_edit
 from byway.widgets.state.elements import ElementMap
 from byway.widgets.state.history import unpacked_indices
@@ -412,19 +412,3 @@ class BenchState(t.HasTraits):
         if self.following is not None:
             self.following.close()
         self.resting.close()
-
-
-def drawing_of(lesion: Lesion) -> Drawing:
-    """A drawing that starts from a lesion; its compartments keep their order and may overlap.
-
-    Raises
-    ------
-    BywayError
-        If there are more than eight compartments.
-    """
-    styles = [Style(c.name, c.kind, c.effect) for c in lesion.compartments]
-    drawing = Drawing(styles=styles)
-    for c, compartment in enumerate(lesion.compartments):
-        drawing.bits[compartment.mask] |= drawing.bit(c)
-    drawing.settings = Settings(drawing.styles, lesion.effect_volume, lesion.scale, lesion.notes)
-    return drawing

@@ -18,7 +18,7 @@ from byway.knowledge.lesion.lesion import Compartment, CompartmentKind, Lesion
 from byway.knowledge.space.grid import TEMPLATE_GRID, Grid
 from byway.widgets.state.history import History, Step
 
-__all__ = ["MOST_COMPARTMENTS", "Box", "Change", "Drawing", "Settings", "Style"]
+__all__ = ["MOST_COMPARTMENTS", "Box", "Change", "Drawing", "Settings", "Style", "drawing_of"]
 
 MOST_COMPARTMENTS = 8
 
@@ -100,6 +100,8 @@ class Drawing:
         self.bits: Values = np.zeros(grid.shape, np.uint8)
         self.settings = Settings(tuple(styles) or (Style("core", "core", 1.0), Style("oedema", "oedema", 0.3)))
         self.history = History()
+        self._tally = np.zeros(256, np.int64)  # voxels by byte, kept in step so that no stroke counts the whole grid
+        self._tally[0] = grid.size
 
     @property
     def flat(self) -> Values:
@@ -132,9 +134,15 @@ class Drawing:
 
     def counts(self) -> list[int]:
         """Voxels of each compartment."""
-        values = np.bincount(self.flat[self.flat > 0], minlength=256)
         every = np.arange(256)
-        return [int(values[(every >> c) & 1 == 1].sum()) for c in range(len(self.styles))]
+        return [int(self._tally[(every >> c) & 1 == 1].sum()) for c in range(len(self.styles))]
+
+    def recount(self) -> None:
+        """Count anew, after ``bits`` was written to from outside."""
+        self._tally = np.bincount(self.flat, minlength=256)
+
+    def _counted(self, old: Values, new: Values) -> None:
+        self._tally += np.bincount(new, minlength=256) - np.bincount(old, minlength=256)
 
     def set(self, label: str, indices: Indices, new: Values | int) -> Change:
         """Give voxels new bytes as one step; those that have them already are left out."""
@@ -146,6 +154,7 @@ class Drawing:
             return Change(label, (0,) * 6, 0, settings=False)
         self.history.add(Step.of(label, indices, old))
         self.flat[indices] = values
+        self._counted(old, values)
         return Change(label, self._box(indices), len(indices), settings=False)
 
     def configure(self, label: str, settings: Settings, indices: Indices | None = None,
@@ -156,6 +165,7 @@ class Drawing:
         self.history.add(Step.of(label, indices, old, self.settings))
         if new is not None:
             self.flat[indices] = new
+            self._counted(old, new)
         self.settings = settings
         return Change(label, self._box(indices), len(indices), settings=True)
 
@@ -171,6 +181,7 @@ class Drawing:
         if crossing is None:
             return None
         step, indices, settings = crossing
+        self._counted(step.other_side(), self.flat[indices])
         changed = settings is not self.settings
         self.settings = settings
         return Change(step.label, self._box(indices), len(indices), changed)
@@ -199,3 +210,23 @@ class Drawing:
         styles = list(self.styles)
         styles[compartment] = Style.of({**vars(styles[compartment]), **changes})
         return replace(self.settings, styles=tuple(styles))
+
+
+def drawing_of(lesion: Lesion) -> Drawing:
+    """A drawing that starts from a lesion; its compartments keep their order and may overlap.
+
+    Raises
+    ------
+    BywayError
+        If there are more than eight compartments.
+    """
+    if len(lesion.compartments) > MOST_COMPARTMENTS:
+        raise BywayError(Fault("compartments", "lesion", f"{len(lesion.compartments)} compartments",
+                               f"at most {MOST_COMPARTMENTS}", "merge some of them"))  # fmt: skip
+    styles = [Style(c.name, c.kind, c.effect) for c in lesion.compartments]
+    drawing = Drawing(styles=styles)
+    for c, compartment in enumerate(lesion.compartments):
+        drawing.bits[compartment.mask] |= drawing.bit(c)
+    drawing.recount()
+    drawing.settings = Settings(drawing.styles, lesion.effect_volume, lesion.scale, lesion.notes)
+    return drawing

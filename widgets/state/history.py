@@ -57,11 +57,15 @@ class Step:
         """What the step holds."""
         return len(self.indices) + len(self.values)
 
+    def other_side(self) -> NDArray[np.uint8]:
+        """The values that the voxels have on the other side of the step."""
+        return np.frombuffer(zlib.decompress(self.values), np.uint8)
+
     def cross(self, flat: NDArray[np.uint8], settings: Any) -> tuple[NDArray[np.int64], Any]:
         """Swap values with ``flat`` in place; the step then leads back. Returns changed voxels, and settings to use."""
         indices = unpacked_indices(self.indices)
         here = flat[indices]
-        flat[indices] = np.frombuffer(zlib.decompress(self.values), np.uint8)
+        flat[indices] = self.other_side()
         self.values = zlib.compress(here.tobytes(), 1)
         if self.settings is None:
             return indices, settings
