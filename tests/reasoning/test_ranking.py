@@ -27,7 +27,7 @@ def test_nothing_changes(explained: Explanation) -> None:
 
 
 def test_another_leads(explained: Explanation) -> None:
-    """With the first two accounts' posteriors swapped, the sentence names the new leader; a gone account stays listed."""
+    """With the first two posteriors swapped, the sentence names the new leader; a gone account stays listed."""
     first, second, *rest = explained.accounts
     swapped = (replace(second, posterior=first.posterior), replace(first, posterior=second.posterior), *rest[:-1])
     table = ranking_change(explained, replace(explained, accounts=swapped))

@@ -101,6 +101,7 @@ function pointsField(field, env, change) {
     look: (mm) => env.send({ kind: "look", mm }),
     ask: () => env.slices(box),
   });
+  box.setFocus(env.crosshair());
   const told = h("p", { class: "bw-soft be-course", role: "status" });
   const here = () => env.crosshair().map((x) => Math.round(x * 2) / 2);
   const add = h("button", { type: "button", class: "bw-button be-at-cross", onclick: () => box.add(here()) }, words.add_at_crosshair);

@@ -249,8 +249,9 @@ export function makeForm(env) {
     mark(effectTable, "data-stage", effect.stage);
     say(effectWords, effect.stage === "waits" ? words.effect_waits : effect.stage === "none" ? effect.words || words.effect_none : effect.words);
     effectTable.hidden = effect.stage !== "done";
-    keep(effectRows, effect.rows, (row) => row.account, () => h("tr", {}, h("th", { scope: "row" }), h("td", {}), h("td", {})), (row, item) => {
-      say(row.cells[0], item.title);
+    keep(effectRows, effect.rows, (row) => row.account, () => h("tr", {}, h("th", { scope: "row" }, h("span", { class: "be-title" })), h("td", {}), h("td", {})), (row, item) => {
+      say(row.cells[0].firstChild, item.title);
+      mark(row.cells[0], "title", item.title);
       for (const [cell, amount] of [[row.cells[1], item.before], [row.cells[2], item.after]]) {
         cell.replaceChildren(h("span", { class: "be-bar", style: `--share: ${amount || 0}` }), h("span", { class: "bw-number" }, amount === null ? words.not_shown : percent(amount)));
       }

@@ -267,7 +267,14 @@ export function makeLightbox(words, { change, choose, look, ask, ordered = true 
         }
       } else if (event.key === "n" || event.key === "N") {
         if (points.length) select((chosen + 1) % points.length);
-      } else if (event.key === "Insert" || event.key === "i") add([...focus]);
+      } else if (event.key === "Insert" || event.key === "i") {
+        const next = points[chosen + 1];
+        if (ordered && chosen >= 0 && next) {
+          points = [...points.slice(0, chosen + 1), points[chosen].map((v, i) => Math.round(v + next[i]) / 2), ...points.slice(chosen + 1)];
+          select(chosen + 1);
+          change(points, true);
+        } else add([...focus]);
+      }
       else if ((event.key === "Delete" || event.key === "Backspace") && points[chosen]) {
         const gone = chosen;
         points = points.filter((_, i) => i !== gone);
@@ -285,6 +292,7 @@ export function makeLightbox(words, { change, choose, look, ask, ordered = true 
     setPoints: (now) => {
       points = now.map((p) => [...p]);
       if (chosen >= points.length) chosen = points.length - 1;
+      if (chosen < 0 && points.length) focus = [0, 1, 2].map((axis) => Math.round(points.reduce((sum, p) => sum + p[axis], 0) / points.length));
       paint();
     },
     setCourse: (now) => {

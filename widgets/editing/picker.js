@@ -1,7 +1,7 @@
 // A field that finds one thing in a long list: write to narrow it down, arrows and Enter or a click to choose.
 import { fill, freshId, h, mark } from "../front/kit.js";
 
-const MOST = 40;
+const MOST = 150;
 
 /**
  * `options()` returns [[key, name], ...]; `pick(key)` is called on a choice. With `free`, what is written may stand as
@@ -16,10 +16,12 @@ export function makePicker(words, label, options, pick, { free = false, clear = 
   let value = "";
   let shown = [];
   let at = -1;
+  let most = MOST;
 
   const nameOf = (key) => (options().find(([each]) => each === key) || [key, key])[1];
 
   function close() {
+    most = MOST;
     list.hidden = true;
     mark(input, "aria-expanded", "false");
     mark(input, "aria-activedescendant", null);
@@ -36,7 +38,7 @@ export function makePicker(words, label, options, pick, { free = false, clear = 
     const rank = ([key, name]) => (name.toLowerCase().startsWith(text.toLowerCase()) || key.startsWith(text) ? 0 : 1);
     const found = options().filter(([key, name]) => wanted.every((part) => `${name} ${key}`.toLowerCase().includes(part)));
     if (wanted.length) found.sort((a, b) => rank(a) - rank(b));
-    shown = found.slice(0, MOST);
+    shown = found.slice(0, most);
     list.replaceChildren(...shown.map(([key, name], n) => {
       const item = h("li", { id: `${id}-${n}`, role: "option", "aria-selected": "false", "data-key": key, class: "be-pick-item" }, name,
         name === key || key === "" ? null : h("span", { class: "bw-soft" }, ` ${key}`));
@@ -45,9 +47,16 @@ export function makePicker(words, label, options, pick, { free = false, clear = 
         choose(key);
       });
       return item;
-    }), found.length > MOST ? h("li", { class: "bw-soft be-pick-more" }, fill(words.more_match, { count: found.length - MOST })) : null,
-    found.length ? null : h("li", { class: "bw-soft be-pick-more" }, words.nothing_matches));
-    [...list.childNodes].filter((each) => each.nodeType === 3).forEach((each) => each.remove());
+    }));
+    if (found.length > most) {
+      list.append(h("li", { class: "bw-soft be-pick-more", onpointerdown: (event) => {
+        event.preventDefault();
+        const { scrollTop } = list;
+        most += MOST;
+        open(text);
+        list.scrollTop = scrollTop;
+      } }, fill(words.more_match, { count: found.length - most })));
+    } else if (!found.length) list.append(h("li", { class: "bw-soft be-pick-more" }, words.nothing_matches));
     list.hidden = false;
     mark(input, "aria-expanded", "true");
     point(wanted.length && shown.length ? 0 : -1);

@@ -24,11 +24,15 @@ _MOST_NODES = 60
 
 
 def catalogue_of(graph: Graph) -> dict[str, list[list[Any]]]:
-    """Key and name of every record by kind; regions with the middle of their seeds and their sides."""
+    """Key and name of every record by kind, what overlays brought first; regions with the middle of their seeds."""
     told: dict[str, list[list[Any]]] = {}
+    base = graph.layers[0]
     for kind in KINDS:
         rows: list[list[Any]] = []
-        for key, record in graph.records(kind).items():
+        origins = {key: graph.origins.get((kind, key)) for key in graph.records(kind)}
+        listed = sorted(origins, key=lambda key: (origin := origins[key]) is None or origin.layer == base)
+        for key in listed:
+            record = graph.records(kind)[key]
             row: list[Any] = [key, graph.name_of(key) if kind != "norm" else key]
             if kind == "region":
                 row.append([round(float(x), 1) for x in np.mean(record.seeds_mni, axis=0)])  # type: ignore[attr-defined]
