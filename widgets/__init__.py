@@ -6,6 +6,7 @@
 
 from byway.widgets.accounts import AccountsPanel, ProfilePanel
 from byway.widgets.bench import Bench, bench
+from byway.widgets.editing import EditingPanel
 from byway.widgets.findings import FindingsPanel
 from byway.widgets.graph import GraphPanel
 from byway.widgets.hits import HitsPanel
@@ -18,6 +19,7 @@ __all__ = [
     "AccountsPanel",
     "Bench",
     "BenchState",
+    "EditingPanel",
     "FindingsPanel",
     "GraphPanel",
     "HitsPanel",

@@ -38,6 +38,7 @@ DECK = {
     "own": ("byway.widgets.accounts.own", "OwnAccountPanel"),
     "steady": ("byway.widgets.accounts.steady", "SteadyPanel"),
     "graph": ("byway.widgets.graph.panel", "GraphPanel"),
+    "editing": ("byway.widgets.editing.panel", "EditingPanel"),
     "head": ("byway.widgets.head.panel", "HeadPanel"),
     "notes": ("byway.widgets.notes.panel", "NotesPanel"),
 }
@@ -160,7 +161,7 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         Parameters
         ----------
         name : str
-            ``profile``, ``routes``, ``whatif``, ``own``, ``steady``, ``graph``, ``head`` or ``notes``.
+            ``profile``, ``routes``, ``whatif``, ``own``, ``steady``, ``graph``, ``editing``, ``head`` or ``notes``.
         """
         if name not in DECK:
             raise BywayError(Fault("view", "bench", name, ", ".join(DECK)))
