@@ -13,9 +13,19 @@ from byway.knowledge.faults import BywayError, Fault, nearest
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.geometry import Geometry
 
-__all__ = ["PROFILE_COLUMNS", "course_profile"]
+__all__ = ["PROFILE_COLUMNS", "PROFILE_FACTS", "course_profile", "profile_facts"]
 
 PROFILE_COLUMNS = ("from_start_mm", "from_end_mm", "share_hit", "mean_effect", "streamlines")
+
+PROFILE_FACTS = (
+    "length_mm",
+    "hit_from_start_mm",
+    "hit_from_end_mm",
+    "hit_length_mm",
+    "peak_share",
+    "peak_from_start_mm",
+    "peak_from_end_mm",
+)
 
 
 class HasGeometry(Protocol):
@@ -122,6 +132,53 @@ def course_profile(
         )
     table.attrs.update(element=element, length_mm=course_mm)
     return table
+
+
+def profile_facts(profile: pd.DataFrame) -> dict[str, float]:
+    """A profile in seven numbers.
+
+    Parameters
+    ----------
+    profile : DataFrame
+        From :func:`course_profile`.
+
+    Returns
+    -------
+    dict
+        ``length_mm`` of the course; ``hit_from_start_mm`` and ``hit_from_end_mm``, from each end to the first bin
+        that is hit; ``hit_length_mm`` between the two; ``peak_share``, the largest share hit in any bin, and its
+        place from each end (of several the first). NaN where nothing is hit, but for the length and the peak of 0.
+
+    Examples
+    --------
+    >>> table = pd.DataFrame({"from_start_mm": [0.5, 1.5, 2.5], "from_end_mm": [2.5, 1.5, 0.5],
+    ...                       "share_hit": [0.0, 0.25, 0.0]})
+    >>> table.attrs["length_mm"] = 3.0
+    >>> facts = profile_facts(table)
+    >>> facts["hit_from_start_mm"], facts["hit_from_end_mm"], facts["hit_length_mm"], facts["peak_from_end_mm"]
+    (1.0, 1.0, 1.0, 1.5)
+    """
+    length = float(profile.attrs["length_mm"])
+    share = profile["share_hit"].fillna(0.0).to_numpy()
+    hit = np.flatnonzero(share > 0)
+    if len(hit) == 0:
+        return {**dict.fromkeys(PROFILE_FACTS, float("nan")), "length_mm": length, "peak_share": 0.0}
+    middle = profile["from_start_mm"].to_numpy()
+    between = (middle[:-1] + middle[1:]) / 2
+    edges = np.concatenate([[0.0], between, [length]])
+    if len(middle) > 2:  # bins are equally wide but for the last
+        edges[1:-1] = np.arange(1, len(middle)) * (middle[1] - middle[0])
+    start, end = float(edges[hit[0]]), float(edges[hit[-1] + 1])
+    peak = int(share.argmax())
+    return {
+        "length_mm": length,
+        "hit_from_start_mm": start,
+        "hit_from_end_mm": length - end,
+        "hit_length_mm": end - start,
+        "peak_share": float(share[peak]),
+        "peak_from_start_mm": float(middle[peak]),
+        "peak_from_end_mm": length - float(middle[peak]),
+    }
 
 
 def _effect_at(

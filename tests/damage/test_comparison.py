@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import numpy as np
+import pytest
 from toy_space import toy_geometry
 
 from byway.knowledge.damage.comparison import COMPARISON_COLUMNS, compared
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.point import point_damage
+from byway.knowledge.faults import BywayError
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.lesion.shapes import sphere_mask
 from byway.knowledge.space.geometry import Geometry
@@ -41,3 +43,10 @@ def test_the_same_anatomy_has_nothing_to_compare(toy_index):
     table = compared(damage, damage)
     assert table.empty
     assert tuple(table.columns) == COMPARISON_COLUMNS
+
+
+def test_two_lesions_are_not_compared(toy_index):
+    """Damage by another lesion is refused, since the difference would not be the anatomy's."""
+    one, other = (point_damage(Lesion.from_mask(sphere_mask((-40, -20, 15), r)), toy_index) for r in (10, 8))
+    with pytest.raises(BywayError, match="two lesions"):
+        compared(one, other)
