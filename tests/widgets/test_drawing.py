@@ -6,16 +6,19 @@ import json
 from pathlib import Path
 from typing import Any
 
+import nibabel as nib
 import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from byway.knowledge.cases.making import new_case
 from byway.knowledge.faults import BywayError
 from byway.knowledge.lesion.images import read_lesion
 from byway.knowledge.lesion.lesion import Compartment, Lesion
 from byway.knowledge.lesion.shapes import ellipsoid_mask, sphere_mask
 from byway.knowledge.space.grid import TEMPLATE_GRID
+from byway.knowledge.space.template import brain_mask
 from byway.widgets.state import BenchState
 from byway.widgets.state.casefiles import unsaved_edits
 from byway.widgets.state.drawing import Drawing, drawing_of
@@ -243,3 +246,18 @@ def test_history_stays_small() -> None:
                     "radius": 4, "compartment": int(rng.integers(0, 2))})  # fmt: skip
     assert len(state.drawing.history.done) > 900
     assert state.drawing.history.size_bytes < 1_000_000
+
+
+def test_a_case_brings_its_scans(tmp_path: Path) -> None:
+    """Scans named in case.yaml are loaded as backgrounds with their unit; one that is missing is told of in words."""
+    image = nib.Nifti1Image(np.where(brain_mask(), 35.0, -1000.0).astype(np.float32), TEMPLATE_GRID.affine)
+    image.set_sform(TEMPLATE_GRID.affine, "mni")
+    nib.save(image, tmp_path / "ct.nii.gz")
+    case = new_case(tmp_path / "case", stage="acute", lesion={"compartments": []})
+    (tmp_path / "ct.nii.gz").rename(case.folder / "ct.nii.gz")
+    scans = [{"name": "first CT", "file": "ct.nii.gz", "sequence": "ct"},
+             {"name": "gone", "file": "gone.nii.gz", "sequence": "t1"}]  # fmt: skip
+    state = BenchState(case.with_spec(scans=scans))
+    assert [(s.name, s.unit) for s in state.scans] == [("MNI152 2009", ""), ("first CT", "HU")]
+    assert state.scans["ct"].value((98, 134, 90)) == 35.0
+    assert "gone.nii.gz" in state.notice

@@ -19,6 +19,13 @@ export class LookState {
     this.changed(Object.keys(values));
   }
 
+  /** Goes back to the template where a scan that was shown is no longer there. */
+  dropLost() {
+    const there = (key) => this.store.scans.some((scan) => scan.key === key);
+    if (!there(this.scan)) this.scan = "template";
+    if (!there(this.second)) this.second = "";
+  }
+
   /** Window of a scan: the user's, or the one it came with. */
   windowOf(scan) {
     return this.windows[scan.key] || scan.window;

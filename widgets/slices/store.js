@@ -104,6 +104,7 @@ export class Store {
     else if (kind === "elements") this.takeElements(message, arrays);
     else if (kind === "scans") {
       this.scans = message.scans;
+      for (const name of [...this.volumes.keys()]) if (/^scan:(?!template$)/.test(name)) this.forget(name);
       this.tell("scans");
     } else this.tell(kind, message);
   }

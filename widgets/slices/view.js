@@ -164,6 +164,7 @@ class View extends WithActions {
       this.layers.kept.clear();
       this.look.set({ shown: [] });
     }
+    if (["table", "scans"].includes(event)) this.look.dropLost();
     if (event === "styles") this.look.compartment = Math.min(this.look.compartment, store.styles.length - 1);
     if (["styles", "patch", "scans", "elements", "shares"].includes(event)) {
       this.refreshControls();

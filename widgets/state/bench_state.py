@@ -12,6 +12,7 @@ import numpy as np
 import traitlets as t
 from numpy.typing import NDArray
 
+from byway.knowledge.cases.files import inside
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.geometry import Geometry
@@ -107,6 +108,7 @@ class BenchState(t.HasTraits):
         """Show another case; the drawing starts from its lesion, with an empty history."""
         self.case = case
         self.drawing = drawing_of(case.lesion)
+        self._open_scans()
         graph = self.science.graph
         self.findings = tuple(case.findings(graph)) if graph is not None else ()
         self._lesion = None
@@ -114,6 +116,16 @@ class BenchState(t.HasTraits):
         self.case_seq += 1
         self.findings_seq += 1
         self._changed(None, {})
+
+    def _open_scans(self) -> None:
+        """Load the case's scans as backgrounds; one that cannot be used is told of, and left out."""
+        self.scans = Scans()
+        for spec in self.case.spec.scans:
+            try:
+                self.scans.add(replace(load_scan(inside(self.case.folder, spec.file), spec.sequence), name=spec.name))
+            except BywayError as error:
+                self.tell(error)
+        self.scans_seq += 1
 
     def set_case(self, case: Any) -> None:
         """Put in a case whose person, stage, cause or priors changed; drawing and findings stay."""

@@ -14,6 +14,9 @@ from typing import Any
 __all__ = ["Resting", "Stopped"]
 
 
+_LONGEST_STROKE_S = 20.0
+
+
 class Stopped(Exception):  # noqa: N818 - no error: the job was overtaken
     """Raised inside a job that a newer one has overtaken."""
 
@@ -38,7 +41,7 @@ class Resting:
         self._wake = threading.Condition()
         self._job: tuple[int, float, Callable[[Callable[[], None]], Any], Callable[[Any], None]] | None = None
         self._number = 0
-        self._held = False
+        self._held_until = 0.0
         self._busy = False
         self._thread: threading.Thread | None = None
         self._loop: asyncio.AbstractEventLoop | None = None
@@ -58,10 +61,17 @@ class Resting:
             self._wake.notify_all()
 
     def hold(self, held: bool) -> None:
-        """Let nothing start (and stop what runs, to be begun again) while the hand is down."""
+        """Let nothing start (and stop what runs, to be begun again) while the hand is down.
+
+        A hand that is not heard of again (a page that was closed in mid-stroke) is taken to be up after a while.
+        """
         with self._wake:
-            self._held = held
+            self._held_until = time.monotonic() + _LONGEST_STROKE_S if held else 0.0
             self._wake.notify_all()
+
+    @property
+    def _held(self) -> bool:
+        return time.monotonic() < self._held_until
 
     def close(self) -> None:
         """Stop for good."""
@@ -130,9 +140,9 @@ class Resting:
         return self._job is not None and not self._held and time.monotonic() >= self._job[1]
 
     def _delay(self) -> float | None:
-        if self._job is None or self._held:
+        if self._job is None:
             return None
-        return max(0.0, self._job[1] - time.monotonic())
+        return max(0.0, max(self._job[1], self._held_until) - time.monotonic())
 
     def _check(self, number: int) -> None:
         with self._wake:
