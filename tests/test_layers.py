@@ -37,6 +37,7 @@ ROOMS = (
     "byway.widgets.findings",
     "byway.widgets.accounts",
     "byway.widgets.routes",
+    "byway.widgets.anatomy",
     "byway.widgets.graph",
     "byway.widgets.head",
     "byway.widgets.notes",
@@ -45,7 +46,8 @@ ROOMS = (
 )
 # The panels stand side by side: none may import another.
 PANELS = tuple(f"byway.widgets.{p}" for p in
-               ("slices", "hits", "findings", "editing", "accounts", "routes", "graph", "head", "notes"))  # fmt: skip
+               ("slices", "hits", "findings", "editing", "accounts", "routes", "anatomy", "graph", "head",
+                "notes"))  # fmt: skip
 
 
 def module_name(path: Path) -> str:

@@ -22,7 +22,7 @@ from byway.widgets.accounts import AccountsPanel
 from byway.widgets.findings import FindingsPanel
 from byway.widgets.front import load_css, load_esm
 from byway.widgets.hits import HitsPanel
-from byway.widgets.panel import Panel
+from byway.widgets.panel import Panel, whose_of
 from byway.widgets.slices import SlicesPanel
 from byway.widgets.state import BenchState
 from byway.widgets.state.following import Following
@@ -39,6 +39,8 @@ DECK = {
     "steady": ("byway.widgets.accounts.steady", "SteadyPanel"),
     "graph": ("byway.widgets.graph.panel", "GraphPanel"),
     "editing": ("byway.widgets.editing.panel", "EditingPanel"),
+    "along": ("byway.widgets.anatomy.along", "AlongPanel"),
+    "anatomies": ("byway.widgets.anatomy.anatomies", "AnatomiesPanel"),
     "head": ("byway.widgets.head.panel", "HeadPanel"),
     "notes": ("byway.widgets.notes.panel", "NotesPanel"),
 }
@@ -64,7 +66,7 @@ class BenchHead(Panel):
             "cause": list(get_args(CaseFile.model_fields["cause"].annotation)),
         }
         self.show_case()
-        self.when(["case_seq"], self.show_case)
+        self.when(["case_seq", "graph_seq"], self.show_case)
         self._notices = t.dlink((self.state, "notice"), (self, "notice"))
 
     def show_case(self) -> None:
@@ -81,6 +83,7 @@ class BenchHead(Panel):
                 "stage": spec.stage if spec else "subacute",
                 "cause": spec.cause if spec else "unknown",
                 "folder": str(case.folder) if case is not None else None,
+                "whose": whose_of(self.state),
             }
             self.stamp += 1
 
@@ -161,7 +164,8 @@ class Bench(ipywidgets.VBox):  # type: ignore[misc]
         Parameters
         ----------
         name : str
-            ``profile``, ``routes``, ``whatif``, ``own``, ``steady``, ``graph``, ``editing``, ``head`` or ``notes``.
+            ``profile``, ``routes``, ``whatif``, ``own``, ``steady``, ``graph``, ``editing``, ``along``,
+            ``anatomies``, ``head`` or ``notes``.
         """
         if name not in DECK:
             raise BywayError(Fault("view", "bench", name, ", ".join(DECK)))

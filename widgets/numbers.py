@@ -10,6 +10,7 @@ from typing import Any
 
 import pandas as pd
 
+from byway.knowledge.damage.profile import profile_facts
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.reasoning.rerouting import route_flows
 from byway.knowledge.reasoning.scenarios import Scenario
@@ -18,7 +19,15 @@ __all__ = ["number_named"]
 
 
 def number_named(
-    explanation: Any, name: str, *, account: int | None = None, what_if: Any = None, own: Any = None, steady: Any = None
+    explanation: Any,
+    name: str,
+    *,
+    account: int | None = None,
+    what_if: Any = None,
+    own: Any = None,
+    steady: Any = None,
+    along: Any = None,
+    anatomies: Any = None,
 ) -> float:
     """The number that a panel shows under a name.
 
@@ -45,6 +54,10 @@ def number_named(
 
     steady : Sensitivity, optional
         For ``steady/<row>/<column>``: what that panel shows.
+    along : DataFrame, optional
+        For ``along/<element>/<fact>`` and ``along/<element>/bins/<row>/<column>``: the course profile of the element.
+    anatomies : DataFrame, optional
+        For ``anatomies/<element>/<column>``: template and own anatomy side by side.
 
     Raises
     ------
@@ -64,6 +77,10 @@ def number_named(
                 return _cell(getattr(what_if, rest[0]), rest[1], rest[2])
             case "steady":
                 return float(steady.table[rest[1]].iloc[int(rest[0])])
+            case "along" if along.attrs["element"] == rest[0]:
+                return _of_course(along, rest[1:])
+            case "anatomies":
+                return _cell(anatomies, rest[0], rest[1])
             case "own":
                 return float(own.posterior_beside) if rest == ["posterior_beside"] else _of_account(own, rest)
             case "graph":
@@ -84,6 +101,12 @@ def _cell(table: pd.DataFrame, row: str, column: str) -> float:
     if len(found) != 1:
         raise KeyError(row)
     return float(found.iloc[0])
+
+
+def _of_course(profile: pd.DataFrame, rest: list[str]) -> float:
+    if rest[0] == "bins":
+        return float(profile[rest[2]].iloc[int(rest[1])])
+    return profile_facts(profile)[rest[0]]
 
 
 def _of_account(account: Any, rest: list[str]) -> float:

@@ -8,12 +8,13 @@ from typing import Any, ClassVar
 import anywidget
 import traitlets as t
 
+from byway.knowledge.cases.wording import whose_words
 from byway.knowledge.faults import BywayError
 from byway.knowledge.graph.references import split_reference
 from byway.widgets.state import BenchState
 from byway.widgets.words import section
 
-__all__ = ["Panel", "claims_of", "element_words", "state_of"]
+__all__ = ["Panel", "claims_of", "element_words", "state_of", "whose_of"]
 
 
 def state_of(source: Any) -> BenchState:
@@ -120,6 +121,13 @@ def element_words(graph: Any, element: str) -> dict[str, str]:
     if graph is not None and (key in graph.regions or key in graph.segments):
         name = graph.name_of(key)
     return {"id": element, "kind": kind, "name": name, "side": side or "midline"}
+
+
+def whose_of(state: BenchState) -> str:
+    """Whose anatomy the numbers of a state rest on, in words; nothing where no number is known."""
+    if state.damage is not None:
+        return whose_words(state.damage.index.geometry.anatomy)
+    return whose_words(state.explanation.damage["anatomy"]) if state.explanation is not None else ""
 
 
 def claims_of(claims: Iterable[Any], graph: Any) -> list[dict[str, Any]]:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import pandas as pd
 
 from byway.knowledge.cases.case import Case
@@ -43,12 +45,19 @@ def anatomies_of(lesion: Lesion, desk: Desk, own: Damage | None = None) -> pd.Da
         return pd.DataFrame(columns=list(ANATOMIES_COLUMNS))
     own = own if own is not None else point_damage(lesion, desk.index)
     table = compared(point_damage(lesion, desk.usual.index), own)
-    shapes = compare_anatomies(desk.usual.template, desk.template)[["element", "template_size", "own_size", "apart_mm"]]
-    table = table.merge(shapes, on="element", validate="one_to_one")
+    table = table.merge(_shapes(desk), on="element", validate="one_to_one")
     names = element_names(desk.graph)
     parts = table["element"].str.partition("@")
     table = table.assign(name=parts[0].map(names), side=parts[2])
     return table[list(ANATOMIES_COLUMNS)]
+
+
+@lru_cache(maxsize=4)
+def _shapes(desk: Desk) -> pd.DataFrame:
+    """How the own elements lie against the template's: the same for every lesion."""
+    assert desk.usual is not None
+    table = compare_anatomies(desk.usual.template, desk.template)
+    return table[["element", "template_size", "own_size", "apart_mm"]]
 
 
 def anatomies_of_case(case: Case, *, desk: Desk | None = None) -> pd.DataFrame:

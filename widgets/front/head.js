@@ -15,11 +15,12 @@ function render({ model, el }) {
   const invented = h("span", { class: "bw-tag" }, words.invented);
   const fields = Object.entries(model.get("options")).map(([name, options]) => field(name, words, options, change));
   const age = h("span", { class: "bw-soft" });
+  const whose = h("p", { class: "bw-head-caution bw-soft" });
   const notice = h("p", { class: "bw-notice", role: "status" });
   const save = h("button", { type: "button", class: "bw-button", onclick: () => model.send({ kind: "save" }) }, words.save);
   const panel = h("header", { class: "byway-panel byway-head", "aria-label": words.title },
     h("div", { class: "bw-head-line" }, title, invented, h("div", { class: "bw-head-fields" }, age, fields, save)),
-    notice, h("p", { class: "bw-head-caution bw-soft" }, words.caution));
+    notice, h("p", { class: "bw-head-caution bw-soft" }, words.caution), whose);
   guardKeys(panel);
   el.append(panel);
 
@@ -33,6 +34,7 @@ function render({ model, el }) {
       fields[i].select.disabled = !told.open;
     }
     save.hidden = !told.folder;
+    say(whose, told.whose ? fill(words.whose, { whose: told.whose }) : "");
     const text = model.get("notice");
     say(notice, text);
     notice.hidden = !text;

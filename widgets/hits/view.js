@@ -28,7 +28,8 @@ function makeRow(row, words, select) {
   cells.range.append(range, waiting);
   const name = h("button", { type: "button", class: "bw-hits-name", onclick: () => select(row.element) },
     glyph(row.kind), h("span", { class: "bw-hits-label" }, row.name),
-    h("span", { class: "bw-side", title: words[row.side] }, words[`${row.side}_short`]));
+    h("span", { class: "bw-side", title: words[row.side] }, words[`${row.side}_short`]),
+    row.anatomy === "template" ? null : h("span", { class: "bw-hits-own", title: words.own_hint }, row.anatomy));
   const anatomy = row.anatomy === "template" ? words.template_short : row.anatomy;
   const node = h("tr", { role: "row", class: `bw-hits-row bw-is-${row.kind}`, "data-element": row.element },
     h("th", { scope: "row", role: "rowheader" }, name),

@@ -7,13 +7,16 @@ from functools import cached_property
 from typing import Any
 
 import numpy as np
+import pandas as pd
 from numpy.typing import NDArray
 
+from byway.knowledge.cases.anatomies import anatomies_of
 from byway.knowledge.cases.desk import Desk, desk_for, desk_with
 from byway.knowledge.damage.coverage import uncharted_map, uncharted_share
 from byway.knowledge.damage.ensemble import Ensemble, EnsembleSettings, ensemble
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.point import point_damage
+from byway.knowledge.damage.profile import course_profile
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.reasoning.explain import explain_findings
@@ -74,6 +77,22 @@ class LiveScience:
     def map_of(self, kind: str) -> NDArray[np.uint8] | None:
         """A map over the grid, 0 to 255; see :class:`~byway.widgets.state.science.Science`."""
         return uncharted_map(self.desk.index).view(np.uint8) * np.uint8(255) if kind == "uncharted" else None
+
+    def anatomies(self, lesion: Lesion, damage: Any = None) -> pd.DataFrame:
+        """Template and own anatomy side by side for a lesion; no row where there is no own anatomy."""
+        return anatomies_of(lesion, self.desk, damage)
+
+    @property
+    def anatomy_notes(self) -> tuple[str, ...]:
+        """What was left out of the files of the own anatomy."""
+        return self.desk.notes
+
+    def profile(self, lesion: Lesion, element: str) -> tuple[pd.DataFrame, pd.DataFrame | None]:
+        """Along-course profile of a segment, and the template's of it where the segment is the person's own."""
+        usual = None
+        if self.desk.usual is not None and self.geometry.anatomy[self.geometry.index_of[element]] != "template":
+            usual = course_profile(lesion, self.desk.usual.template, element)
+        return course_profile(lesion, self.desk.template, element), usual
 
     def draws_of(self, lesion: Lesion) -> Any:
         """The damage ensemble of another lesion, by variant."""
