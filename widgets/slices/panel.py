@@ -40,6 +40,8 @@ class SlicesPanel(Panel):
     _css = load_css("front/panel.css", "slices/view.css")
     sections: ClassVar[tuple[str, ...]] = ("slices",)
 
+    _notice: Any = None
+
     radiological = t.Bool(True).tag(sync=True)
     cursor_mm = t.List(t.Float(), default_value=[0.0, 0.0, 0.0]).tag(sync=True)
     notice = t.Unicode("").tag(sync=True)
@@ -69,8 +71,10 @@ class SlicesPanel(Panel):
 
     def close(self) -> None:
         """Stop watching the state, and leave the screen."""
-        self._notice.unlink()
-        super().close()
+        if self._notice is not None:  # a widget is closed once more when it is collected
+            self._notice.unlink()
+            self._notice = None
+            super().close()
 
     # -- what the state announces -----------------------------------------------------------------------------------
 
