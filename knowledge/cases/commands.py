@@ -26,7 +26,7 @@ from byway.knowledge.cases.making import new_case
 from byway.knowledge.cases.own import OwnLayer
 from byway.knowledge.cases.pages import Note, Pages
 from byway.knowledge.cases.pdf import write_pdf
-from byway.knowledge.cases.privacy import identifying_traces, traces_table
+from byway.knowledge.cases.privacy import identifying_traces, image_traces, traces_table
 from byway.knowledge.cases.report import write_report
 from byway.knowledge.cases.similar import similar_to
 from byway.knowledge.cases.tables import write_tables
@@ -222,6 +222,8 @@ def anatomy_compare(path: Path, *, csv: Path | None) -> int:
 def new_from_mask(mask: Path, folder: Path, *, label: int | None) -> int:
     """Make a case folder from a mask."""
     case = new_case(folder, mask, label=label)
+    for trace in image_traces(mask):
+        _say(f"left behind, since it could identify a person: {trace.kind} ({trace.place} of {trace.file})")
     print(f"{case.path}\nnext: add findings there or on the bench, then: byway explain {folder}")
     return 0
 

@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
+import itertools
+import re
 from pathlib import Path
 
 from byway.knowledge.cases.case import Case, open_case
 from byway.knowledge.cases.files import write_case
 from byway.knowledge.cases.model import CaseFile
+from byway.knowledge.cases.privacy import Trace, stripped_image
 from byway.knowledge.faults import CaseError, Fault
-from byway.knowledge.lesion.images import read_lesion, write_mask
+from byway.knowledge.lesion.images import read_lesion, read_volume, write_mask
 
-__all__ = ["new_case"]
+__all__ = ["add_scan", "new_case"]
 
 
 def new_case(folder: str | Path, mask: str | Path | None = None, *, label: int | None = None, **fields: object) -> Case:
@@ -49,3 +52,40 @@ def new_case(folder: str | Path, mask: str | Path | None = None, *, label: int |
         spec = CaseFile.model_validate(data)
     write_case(place / "case.yaml", spec, None)
     return open_case(place)
+
+
+def add_scan(case: Case, path: str | Path, sequence: str = "unknown") -> tuple[Case, list[Trace]]:
+    """Copy a scan into a case folder, under a name that tells nothing and without free text in its header.
+
+    Parameters
+    ----------
+    case : Case
+        A case that lies on disk; case.yaml is written.
+    path : str or Path
+        A NIfTI volume in template space; it is not changed.
+    sequence : str
+        ``t1``, ``flair``, ``ct`` ...
+
+    Returns
+    -------
+    Case
+        The case with the scan.
+    list of Trace
+        What could identify a person and was left behind.
+
+    Raises
+    ------
+    ImageError
+        The file cannot be used; nothing is written.
+    CaseError
+        Somebody changed case.yaml in between.
+    """
+    source = Path(path)
+    read_volume(source)
+    word = re.sub(r"[^a-z0-9]", "", sequence.lower()) or "unknown"
+    taken = {scan.file for scan in case.spec.scans}
+    names = (f"space-MNI152NLin2009aSym_desc-{word}{number or ''}_scan.nii.gz" for number in itertools.count())
+    name = next(name for name in names if name not in taken and not (case.folder / name).exists())
+    left = stripped_image(source, case.folder / name)
+    scans = [*(scan.model_dump() for scan in case.spec.scans), {"name": word, "file": name, "sequence": sequence}]
+    return case.with_spec(scans=scans).save(), left

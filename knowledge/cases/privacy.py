@@ -23,7 +23,7 @@ from nibabel.filebasedimages import ImageFileError
 from byway.knowledge.atomic import write_bytes
 from byway.knowledge.faults import Fault, ImageError
 
-__all__ = ["Trace", "identifying_traces", "stripped_image", "traces_table"]
+__all__ = ["Trace", "identifying_traces", "image_traces", "stripped_image", "traces_table"]
 
 PATTERNS = {
     "a date": re.compile(r"(?<!\d)(?:19|20)\d\d[-_/.]?(?:0[1-9]|1[0-2])[-_/.]?(?:0[1-9]|[12]\d|3[01])(?!\d)"
@@ -128,6 +128,12 @@ def _in_text(path: Path, name: str) -> list[Trace]:
     return traces
 
 
+def image_traces(path: Path) -> list[Trace]:
+    """What in an image's name and header could identify a person; see :func:`identifying_traces`."""
+    named = [Trace(path.name, "file name", kind, text) for kind, text in _matches(path.name)]
+    return named + _in_header(path, path.name)
+
+
 def stripped_image(source: Path, target: Path) -> list[Trace]:
     """Copy a NIfTI image without free text, extensions or a telling name, and say what was left behind.
 
@@ -143,8 +149,7 @@ def stripped_image(source: Path, target: Path) -> list[Trace]:
     ImageError
         The file is no image that can be read.
     """
-    found = [Trace(source.name, "file name", kind, text) for kind, text in _matches(source.name)]
-    found += _in_header(source, source.name)
+    found = image_traces(source)
     try:
         image: Any = nib.load(source)
         data = np.asanyarray(image.dataobj)

@@ -10,10 +10,12 @@ import pytest
 
 from byway.knowledge.cases.files import dump_case
 from byway.knowledge.cases.journal import Journal
+from byway.knowledge.cases.making import add_scan, new_case
 from byway.knowledge.cases.model import CaseFile
 from byway.knowledge.cases.pages import Note, Pages
 from byway.knowledge.cases.privacy import identifying_traces, stripped_image, traces_table
 from byway.knowledge.faults import ImageError
+from byway.knowledge.space.grid import TEMPLATE_GRID
 
 
 def test_an_invented_leak_is_listed(tmp_path: Path) -> None:
@@ -73,3 +75,17 @@ def test_a_journal_of_strokes_is_no_trace(tmp_path: Path) -> None:
     assert identifying_traces(tmp_path) == []
     journal.append({"kind": "findings", "findings": [{"test": "on 2020-01-31"}]})
     assert [trace.kind for trace in identifying_traces(tmp_path)] == ["a date"]
+
+
+def test_a_scan_comes_in_stripped(tmp_path: Path) -> None:
+    """A scan added to a case is named by its sequence, its header is clean, and what was left behind is told."""
+    image = nib.Nifti1Image(np.ones(TEMPLATE_GRID.shape, np.uint8), TEMPLATE_GRID.affine)
+    image.header["descrip"] = b"DOE^JANE"
+    nib.save(image, tmp_path / "doe_19700131.nii.gz")
+    case = new_case(tmp_path / "case")
+    for _ in range(2):
+        case, left = add_scan(case, tmp_path / "doe_19700131.nii.gz", "flair")
+    assert {trace.kind for trace in left} >= {"a date", "free text in the header"}
+    assert len({scan.file for scan in case.spec.scans}) == 2
+    assert all("doe" not in scan.file for scan in case.spec.scans)
+    assert identifying_traces(case.folder) == []
