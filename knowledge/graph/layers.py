@@ -200,8 +200,26 @@ def _gather_segments(records: Records) -> None:
 def _changed(kind: Kind, key: str, before: Record, after: Record, layer: str) -> Change:
     old, new = before.model_dump(mode="json"), after.model_dump(mode="json")
     fields = tuple((name, old[name], new[name]) for name in new if old[name] != new[name])
-    told = "; ".join(f"{name} from {_short(was)} to {_short(now)}" for name, was, now in fields)
+    told = "; ".join(_told(name, was, now) for name, was, now in fields)
     return Change("changed", kind, key, f"{kind} {key} changed: {told}{_by(layer)}", fields, layer)
+
+
+def _told(name: str, was: Any, now: Any) -> str:
+    """A changed field in words; of a list of routes or dependences, only what differs in it."""
+    for each in ("key", "function"):
+        if all(isinstance(part, list) and all(isinstance(i, dict) and each in i for i in part) for part in (was, now)):
+            before, after = {i[each]: i for i in was}, {i[each]: i for i in now}
+            parts = [f"{key} no longer there" for key in before if key not in after]
+            parts += [f"{key} new" for key in after if key not in before]
+            parts += [
+                f"{key} {field} from {_short(before[key].get(field))} to {_short(value)}"
+                for key, item in after.items()
+                if key in before
+                for field, value in item.items()
+                if before[key].get(field) != value
+            ]
+            return f"{name}: {', '.join(parts) or 'in another order'}"
+    return f"{name} from {_short(was)} to {_short(now)}"
 
 
 def _dispute_changes(kind: Kind, key: str, older: Content, newer: Content) -> list[Change]:

@@ -17,6 +17,7 @@ from byway.knowledge.cases.desk import desk_for
 from byway.knowledge.graph.overlay_files import read_overlay
 from byway.knowledge.graph.overlays import Entry, Overlay, overlay_text
 from byway.widgets.editing import EditingPanel
+from byway.widgets.graph import GraphPanel
 from byway.widgets.state import BenchState
 from byway.widgets.state.live import LiveScience
 
@@ -25,9 +26,20 @@ FROM, TO = "Superior temporal gyrus, posterior", "Ventral premotor cortex"
 REPETITION = "Repetition of heard speech"
 HANDLERS = """() => [...document.querySelectorAll('main *')].flatMap((n) => n.getAttributeNames())
   .filter((name) => name.startsWith('on'))"""
-NAMELESS = """() => [...document.querySelectorAll('button, input, select, textarea, [role=radiogroup], [role=combobox]')]
+NAMELESS = """() => [...document.querySelectorAll('button, input, select, textarea, [role=radiogroup]')]
   .filter((e) => { const label = e.labels?.[0]?.textContent || e.getAttribute('aria-label') || e.title || e.textContent;
   return !label || !label.trim(); }).map((e) => e.outerHTML)"""
+
+
+# The first place of a fine grid at which each node of the whole graph shows its name.
+FOUND = """() => { const canvas = document.querySelector('.bw-wheel'); const box = canvas.getBoundingClientRect();
+  const tip = document.querySelector('.bw-wheel-tip'); const found = {};
+  for (let y = 4; y < box.height; y += 6) for (let x = 4; x < box.width; x += 6) {
+    const at = { clientX: box.left + x, clientY: box.top + y, bubbles: true };
+    canvas.dispatchEvent(new PointerEvent('pointermove', at));
+    if (!tip.hidden && !(tip.textContent in found)) found[tip.textContent] = [x, y];
+  }
+  return found; }"""
 
 
 class Desk:
@@ -307,7 +319,7 @@ def test_every_page_draws(page: Any, tmp_path: Path, artefacts: Path, dark: bool
     """Every page of the panel draws in both themes, every control can be named, and the caution stands below."""
     panel = editing_panel(tmp_path / "case")
     panel._heard(panel, {"kind": "keep", "of": "claim", "key": "bow_two", "action": "add", "n": 1, "body": CLAIM}, [])
-    theirs = 'name: Other\nauthor: B\ndate: 2026-12-01\nadd:\n  claims:\n    bow_two: {says: "No.", subject: bow.long}\n'
+    theirs = "name: Other\nauthor: B\ndate: 2026-12-01\nadd: {claims: {bow_two: {says: No, subject: bow.long}}}\n"
     panel._heard(panel, {"kind": "import", "text": theirs, "name": "other.yaml"}, [])
     bare = BarePage(page, panel, dark=dark)
     errors: list[str] = []
@@ -322,4 +334,25 @@ def test_every_page_draws(page: Any, tmp_path: Path, artefacts: Path, dark: bool
         name = f"editing_{tab.lower().replace(' ', '_')}_{'dark' if dark else 'light'}.png"
         page.screenshot(path=artefacts / name, full_page=True)
     assert errors == []
+    panel.close()
+
+
+def test_the_whole_graph_keeps_its_places(page: Any, tmp_path: Path) -> None:
+    """After a function and a sign were added, every node of the whole graph is found where it was before."""
+    panel = editing_panel(tmp_path / "case")
+    graph = GraphPanel(panel.state)
+    bare = BarePage(page, graph)
+    bare.show()
+    page.get_by_role("radio", name="Whole graph").click()
+    bare.settle(0.3)
+    before = page.evaluate(FOUND)
+    assert len(before) > 5
+    routes = {"alone": {"name": "Alone", "usual_load": 1.0, "chain": [next(iter(panel.session.base.regions))]}}
+    body = {"name": "A new function", "domain": "motor", "laterality": "each_side", "routes": routes, "description": ""}
+    edit = {"kind": "keep", "of": "function", "key": "newly_made", "action": "add", "n": 1, "body": body}
+    panel._heard(panel, edit, [])
+    bare.settle(0.4)
+    assert "newly_made" in panel.state.science.graph.functions, panel.state.notice
+    after = page.evaluate(FOUND)
+    assert {name: after.get(name) for name in before} == before
     panel.close()

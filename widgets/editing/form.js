@@ -4,7 +4,7 @@ import { makeField } from "./fields.js";
 import { makePicker } from "./picker.js";
 import { drawPicture } from "./picture.js";
 
-const slug = (text) => text.normalize("NFKD").toLowerCase().replace(/[̀-ͯ]/g, "").replace(/[^a-z0-9]+/g, "_").replace(/^[_0-9]+|_+$/g, "").slice(0, 60).replace(/_+$/, "");
+const slug = (text) => text.normalize("NFKD").toLowerCase().replace(/[̀-ͯ]/g, "").replace(/[^a-z0-9]+/g, "_").replace(/^[_0-9]+|_+$/g, "").slice(0, 90).replace(/_+$/, "");
 const same = (a, b) => JSON.stringify(a) === JSON.stringify(b);
 const REST_MS = 220;
 
@@ -155,7 +155,9 @@ export function makeForm(env) {
       put("says", fill(words[`says_${value("relation")}`] || "{subject} {object}", { subject, object }));
     }
     if (!now.keyTouched) {
-      const stem = now.of === "claim" ? [value("subject"), value("relation"), value("object")].filter(Boolean).join(" ")
+      const last = (reference) => String(reference || "").split("@")[0].split(".").pop();
+      const stem = now.of === "claim" ? [last(value("subject")), value("relation"), last(value("object"))].filter(Boolean).join(" ")
+        : now.of === "segment" && !now.touched.has("name") && value("from") && value("to") ? `${last(value("from"))} to ${last(value("to"))}`
         : now.of === "source" ? `${String(value("authors") || "").split(/[\s,]/)[0]} ${value("year") || ""}` : String(value("name") || "");
       const taken = new Set((env.catalogue()[now.of] || []).map(([each]) => each));
       const lead = now.of === "segment" ? `${pathwayPicker.get()}.` : "";
@@ -249,11 +251,12 @@ export function makeForm(env) {
     mark(effectTable, "data-stage", effect.stage);
     say(effectWords, effect.stage === "waits" ? words.effect_waits : effect.stage === "none" ? effect.words || words.effect_none : effect.words);
     effectTable.hidden = effect.stage !== "done";
+    const most = Math.max(0.01, ...effect.rows.flatMap((row) => [row.before || 0, row.after || 0]));
     keep(effectRows, effect.rows, (row) => row.account, () => h("tr", {}, h("th", { scope: "row" }, h("span", { class: "be-title" })), h("td", {}), h("td", {})), (row, item) => {
       say(row.cells[0].firstChild, item.title);
       mark(row.cells[0], "title", item.title);
       for (const [cell, amount] of [[row.cells[1], item.before], [row.cells[2], item.after]]) {
-        cell.replaceChildren(h("span", { class: "be-bar", style: `--share: ${amount || 0}` }), h("span", { class: "bw-number" }, amount === null ? words.not_shown : percent(amount)));
+        cell.replaceChildren(h("span", { class: "be-bar", style: `--share: ${(amount || 0) / most}` }), h("span", { class: "bw-number" }, amount === null ? words.not_shown : percent(amount)));
       }
       row.classList.toggle("be-moved", Math.abs(item.change) >= 0.005);
       mark(row, "title", `${item.change >= 0 ? "+" : ""}${fixed(item.change * 100, 1)} %`);

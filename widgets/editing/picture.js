@@ -21,9 +21,13 @@ export function drawPicture(picture, words) {
     let [a, b] = [at.get(edge.from), at.get(edge.to)];
     if (!a || !b) return null;
     if (a[0] > b[0]) [a, b] = [b, a];
-    const bend = a[0] === b[0] ? 26 : (b[0] - a[0] - WIDE) / 2;
-    const x2 = a[0] === b[0] ? b[0] + WIDE : b[0];
-    return s("path", { class: `be-edge be-how-${edge.how}`, d: `M${a[0] + WIDE} ${a[1] + 11}C${a[0] + WIDE + bend} ${a[1] + 11} ${a[0] === b[0] ? x2 + bend : x2 - bend} ${b[1] + 11} ${x2} ${b[1] + 11}` });
+    const [x1, y1, x2, y2] = [a[0] + WIDE, a[1] + 11, b[0], b[1] + 11];
+    const half = GAP / 2;
+    let d = `M${x1} ${y1}C${x1 + half} ${y1} ${x2 - half} ${y2} ${x2} ${y2}`;
+    if (a[0] === b[0]) d = `M${x1} ${y1}C${x1 + 26} ${y1} ${x1 + 26} ${y2} ${x1} ${y2}`;
+    // A line that passes other columns runs in the gap between two rows, so that it does not seem to end on the way.
+    else if (x2 - x1 > GAP) d = `M${x1} ${y1}C${x1 + half} ${y1} ${x1 + half} ${b[1] - 4} ${x1 + GAP} ${b[1] - 4}H${x2 - GAP}C${x2 - half} ${b[1] - 4} ${x2 - half} ${y2} ${x2} ${y2}`;
+    return s("path", { class: `be-edge be-how-${edge.how}`, d });
   });
   const boxes = picture.nodes.map((node) => {
     const [x, y] = at.get(node.id);

@@ -199,7 +199,10 @@ export function makeWheel(words, pick, point) {
     for (const edge of edges) {
       for (const [a, b] of [[edge.a, edge.b], [edge.b, edge.a]]) touching.set(a, (touching.get(a) || new Set()).add(b));
     }
-    drawn = { nodes, edges, centre, touching, domains: graph.domains, at: drawn && drawn.nodes.length === nodes.length ? drawn.at : places(nodes, graph.domains) };
+    const at = places(nodes, graph.domains);
+    // What was there keeps its place, so that an edit does not move what somebody has learnt to find.
+    if (drawn) for (const [key, place] of drawn.at) if (at.has(key)) at.set(key, place);
+    drawn = { nodes, edges, centre, touching, domains: graph.domains, at };
     paint();
   }
 
