@@ -7,8 +7,11 @@ from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
+import nbformat
 import pytest
 from browser.bare_page import BarePage
+from browser.notebook_page import open_and_run
+from browser.notebook_server import NotebookServer
 from browser.strings import INJECTIONS
 from editing_case import CLAIM, editing_panel
 
@@ -31,6 +34,8 @@ NAMELESS = """() => [...document.querySelectorAll('button, input, select, textar
   return !label || !label.trim(); }).map((e) => e.outerHTML)"""
 
 
+POSTERIORS = """() => [...document.querySelectorAll('.bw-card')].map((card) =>
+  [card.dataset.account, card.querySelector('.bw-card-posterior [data-value]').dataset.value])"""
 # The first place of a fine grid at which each node of the whole graph shows its name.
 FOUND = """() => { const canvas = document.querySelector('.bw-wheel'); const box = canvas.getBoundingClientRect();
   const tip = document.querySelector('.bw-wheel-tip'); const found = {};
@@ -356,3 +361,38 @@ def test_the_whole_graph_keeps_its_places(page: Any, tmp_path: Path) -> None:
     after = page.evaluate(FOUND)
     assert {name: after.get(name) for name in before} == before
     panel.close()
+
+
+def test_on_the_bench(
+    page: Any, notebook_server: Callable[[str], NotebookServer], artefacts: Path, tmp_path: Path
+) -> None:
+    """In Voila, a route edited on the bench is weighed before it is kept, changes the accounts, and can be undone."""
+    server = notebook_server("voila")
+    shutil.copytree(FIRST_CASE, server.root / "edited_case")
+    made = nbformat.v4.new_notebook(
+        cells=[nbformat.v4.new_code_cell('from byway.widgets import bench\n\nbench("edited_case", draws=60)')]
+    )
+    made.metadata["kernelspec"] = {"name": "python3", "display_name": "Python 3", "language": "python"}
+    nbformat.write(made, server.root / "edited.ipynb")
+    open_and_run(page, server, "edited.ipynb")
+    page.wait_for_selector(".byway-accounts .bw-card", timeout=120_000)
+    before = page.evaluate(POSTERIORS)
+    page.get_by_role("radio", name="Editing", exact=True).click()
+    panel = page.locator(".byway-editing")
+    panel.get_by_role("radio", name="Function and routes").click()
+    panel.get_by_role("combobox", name="Record", exact=True).fill(REPETITION)
+    page.keyboard.press("Enter")
+    panel.locator(".be-load").first.wait_for(timeout=60_000)
+    panel.locator(".be-load").nth(2).fill("1.6")
+    panel.get_by_role("button", name="Share out").click()
+    panel.locator(".be-effect[data-stage=done] tr.be-moved").first.wait_for(timeout=60_000)
+    page.screenshot(path=artefacts / "editing_bench.png", full_page=True)
+    panel.get_by_role("button", name="Keep", exact=True).click()
+    now = f"JSON.stringify(({POSTERIORS})())"
+    page.wait_for_function(f"(old) => {now} !== JSON.stringify(old)", arg=before, timeout=60_000)
+    file = server.root / "edited_case" / "overlays"
+    assert [entry.slot for path in file.glob("*.yaml") for entry in read_overlay(path).entries] == [
+        ("change", "function", "repetition")
+    ]
+    panel.get_by_role("button", name="Undo").click()
+    page.wait_for_function(f"(old) => {now} === JSON.stringify(old)", arg=before, timeout=60_000)
