@@ -117,8 +117,12 @@ export function watch(model, names, draw) {
   return () => events.forEach((event) => model.off(event, draw));
 }
 
-/** Keeps keys typed into a panel from the notebook's shortcuts. */
+/**
+ * Keeps keys typed into a panel from the notebook's shortcuts: notebooks take keys on their way down, before the panel
+ * hears of them, except below this mark.
+ */
 export function guardKeys(node) {
+  node.setAttribute("data-lm-suppress-shortcuts", "true");
   node.addEventListener("keydown", (event) => event.stopPropagation());
 }
 

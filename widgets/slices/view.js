@@ -50,8 +50,6 @@ class View extends WithActions {
     const { panel, body, foot } = frame(el, words, "slices", ...this.buttons, this.display,
       h("button", { type: "button", class: "bs-button", onclick: () => this.store.send("save") }, words.save_short), helpButton);
     this.panel = panel;
-    // Notebooks take keys on their way down, before this panel hears of them, except below this mark.
-    mark(panel, "data-lm-suppress-shortcuts", "true");
     this.rail = rail(this);
     this.options = optionsRow(this);
     this.stage = h("div", { class: "bs-stage" }, ...this.films.map((film) => film.node), this.projection.node);
