@@ -37,6 +37,7 @@ DECK = {
     "whatif": ("byway.widgets.accounts.whatif", "WhatIfPanel"),
     "own": ("byway.widgets.accounts.own", "OwnAccountPanel"),
     "steady": ("byway.widgets.accounts.steady", "SteadyPanel"),
+    "remote": ("byway.widgets.accounts.remote", "RemotePanel"),
     "graph": ("byway.widgets.graph.panel", "GraphPanel"),
     "editing": ("byway.widgets.editing.panel", "EditingPanel"),
     "along": ("byway.widgets.anatomy.along", "AlongPanel"),

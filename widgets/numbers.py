@@ -38,8 +38,8 @@ def number_named(
     name : str
         ``uncharted_share``, ``other_posterior``, ``damage/<element>/<column>``, ``signs/<sign>@<side>/<column>``,
         ``functions/<copy>/<column>``, ``next_tests/<sign>@<side>/<column>``, ``next_images/<element>/<column>``,
-        ``next_axes/<axis>/bits``, ``accounts/<rank from 0>/posterior`` and likewise ``prior`` and
-        ``odds_vs_cortical``, ``accounts/<rank>/ledger/<sign>@<side>/<column>``,
+        ``next_axes/<axis>/bits``, ``remote/<region>/<column>``, ``accounts/<rank from 0>/posterior`` and likewise
+        ``prior`` and ``odds_vs_cortical``, ``accounts/<rank>/ledger/<sign>@<side>/<column>``,
         ``accounts/<rank>/ledger_sum/<column>``, ``accounts/<rank>/bottlenecks/<copy>/capacity``,
         ``accounts/<rank>/counterfactuals/<row>/change``, ``routes/<copy>/capacity``,
         ``routes/<copy>/<route>/usual`` or ``now``, ``routes/<copy>/elements/<element>/damage``,
@@ -85,7 +85,7 @@ def number_named(
                 return float(own.posterior_beside) if rest == ["posterior_beside"] else _of_account(own, rest)
             case "graph":
                 return float(getattr(explanation.reckoning.prepared.graph.signs[rest[1]], rest[2]))
-            case "damage" | "signs" | "functions" | "next_tests" | "next_images" | "next_axes":
+            case "damage" | "signs" | "functions" | "next_tests" | "next_images" | "next_axes" | "remote":
                 return _cell(getattr(explanation, first), rest[0], rest[1])
     except (KeyError, IndexError, ValueError, AttributeError):
         pass

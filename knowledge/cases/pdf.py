@@ -67,7 +67,7 @@ def report_pdf(case: Case, explanation: Explanation, **choices: Any) -> bytes:
     story = [*_head(facts, ink, w), *_hit(facts, ink, w), *_profile(facts, ink, w), *_accounts(facts, ink, w)]
     if facts.full:
         story += _team(facts, ink, w)
-    story += [*_next(facts, ink, w), *_notes(facts, ink, w)]
+    story += [*_remote(facts, ink, w), *_next(facts, ink, w), *_notes(facts, ink, w)]
     if facts.full:
         story += _back(facts, ink, w)
     if ink.missing:
@@ -146,6 +146,16 @@ def _profile(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
                                share(r["expected"]), share(r["expected_cortical"])], numbers))  # fmt: skip
     return [ink.say(w["profile"], "heading"), ink.say(w["profile_key"], "quiet"),
             grid(rows, [WIDTH - 314, 32, 58, 68, 78, 78])]  # fmt: skip
+
+
+def _remote(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
+    if not f.remote:
+        return []
+    rows = [ink.cells([w["element"], w["lost_input"], w["strength"], w["communicability"]], range(1, 4), head=True)]
+    rows += [ink.cells([r["words"], share(r["lost_input"]), f"{r['strength_before']:.1f} – {r['strength_after']:.1f}",
+                        share(r["communicability_kept"])], range(1, 4)) for r in f.remote]  # fmt: skip
+    return [ink.say(w["remote"], "heading"), ink.say(w["remote_text"], "quiet"),
+            grid(rows, [WIDTH - 216, 56, 80, 80])]  # fmt: skip
 
 
 def _accounts(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:

@@ -76,6 +76,7 @@ class ReportFacts:
     reasons: list[tuple[str, str, str, str]]
     anatomy: str
     anatomies: list[Row]
+    remote: list[Row]
     made: str
     versions: dict[str, str]
     graph_hash: str
@@ -137,6 +138,7 @@ def facts_of(
                  for author, said in sorted(people.items())],
         anatomy=anatomy_words(explanation),
         anatomies=rows_of(anatomies_of(lesion, desk_of(case))) if case.spec.anatomy else [],
+        remote=rows_of(explanation.remote[explanation.remote["named"].astype(bool)].head(6)) if full else [],
         made=datetime.now(UTC).date().isoformat(),
         versions=versions(),
         graph_hash=graph.content_hash[:12],

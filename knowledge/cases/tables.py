@@ -59,6 +59,7 @@ def case_tables(case: Case, explanation: Explanation) -> dict[str, pd.DataFrame]
         "counterfactuals": pd.concat([a.counterfactuals.assign(account=a.key) for a in accounts], ignore_index=True),
         "next_tests": explanation.next_tests,
         "next_images": explanation.next_images,
+        "remote": explanation.remote,
         **({"anatomies": anatomies_of_case(case)} if case.spec.anatomy else {}),
         "standing": team,
         "notes": pd.DataFrame([(n.id, n.author, n.time, n.anchor.kind, n.anchor.key, n.reply_to, " ".join(n.tags),

@@ -83,6 +83,17 @@ def test_full_posterior(benchmark, graph: Graph, given: _Given, count: int) -> N
     benchmark(posterior, prepared, given, findings_of(graph, count))
 
 
+@pytest.mark.parametrize("part", [4, 2, 1])
+def test_posterior_by_number_of_functions(benchmark, graph: Graph, given: _Given, part: int) -> None:
+    """A quarter, half and all of the functions, each with the signs that depend on them alone."""
+    kept = dict(list(graph.functions.items())[::part])
+    signs = {key: sign for key, sign in graph.signs.items() if all(each.function in kept for each in sign.depends)}
+    fields = {name: getattr(graph, name) for name in ("regions", "pathways", "segments", "claims", "sources", "norms")}
+    smaller = Graph(**fields, functions=kept, signs=signs)
+    benchmark.extra_info.update(functions=len(kept), signs=len(signs))
+    benchmark(posterior, prepare(smaller, given.element_ids), given, findings_of(smaller, 10))
+
+
 def test_accounts_of_the_posterior(benchmark, graph: Graph, given: _Given) -> None:
     """Grouping of scenarios into accounts."""
     reckoning = posterior(prepare(graph, given.element_ids), given, findings_of(graph, 10))

@@ -27,7 +27,9 @@ out.add_class("probe-out")
 
 def fits(name, value):
     try:
-        known = eval("b.state." + name) if name.startswith("lesion.") else number_named(b.explanation, name)
+        along, anatomies = (b.deck.get(name) for name in ("along", "anatomies"))
+        known = eval("b.state." + name) if name.startswith("lesion.") else number_named(
+            b.explanation, name, along=along and along.profile, anatomies=anatomies and anatomies.table)
         return abs(known - value) <= 1e-6 * max(1, abs(value))
     except Exception:
         return False
@@ -99,16 +101,26 @@ def test_a_stroke_changes_hits_and_accounts(
 def test_every_number_on_the_bench_is_that_of_the_api(
     page: Any, notebook_server: Callable[[str], NotebookServer]
 ) -> None:
-    """Every number that the bench of the demo case shows is walked back to the explanation in the kernel."""
+    """Every number that the bench of the demo case shows, further views too, is walked back to the kernel."""
     server = notebook_server("lab")
     open_and_run(page, server, notebook(server.root, "walk.ipynb", BENCH, PROBE))
     page.wait_for_selector(".bw-card", timeout=90_000)
     page.evaluate("() => { for (const d of document.querySelectorAll('.byway-bench details')) d.open = true;"
                   " for (const b of document.querySelectorAll('.bw-card-head[aria-expanded=false]')) b.click(); }")
-    shown = page.evaluate("() => JSON.stringify([...document.querySelectorAll('.byway-bench [data-name]')]"
-                          ".map((n) => [n.dataset.name, Number(n.dataset.value)]))")  # fmt: skip
-    assert shown.count("[") > 300
-    page.locator(".probe-in textarea").fill(shown)
+    shown: dict[str, float] = {}
+    views = {"profile": ".bw-prof-row", "routes": ".bw-route-map", "remote": ".byway-remote tbody tr",
+             "along": ".bw-along-chart"}  # fmt: skip
+    for view, what in views.items():
+        page.locator(f".byway-tabs [data-key={view}]").click()
+        page.wait_for_selector(what, timeout=60_000)
+        page.evaluate("() => { for (const d of document.querySelectorAll('.byway-deck details')) d.open = true; }")
+        page.wait_for_timeout(100)
+        found = page.evaluate("() => [...document.querySelectorAll('.byway-bench [data-name]')]"
+                              ".map((n) => [n.dataset.name, Number(n.dataset.value)])")  # fmt: skip
+        assert len(shown) < len(shown | dict(found)), view
+        shown |= dict(found)
+    assert len(shown) > 400
+    page.locator(".probe-in textarea").fill(json.dumps(list(shown.items())))
     page.locator(".probe-in textarea").blur()
     page.wait_for_function("() => document.querySelector('.probe-out textarea').value", timeout=30_000)
     assert page.locator(".probe-out textarea").input_value() == "wrong: "
@@ -133,6 +145,7 @@ def test_further_views_open(page: Any, notebook_server: Callable[[str], Notebook
     page.wait_for_selector(".bw-card", timeout=90_000)
     shows = {"profile": ".byway-profile .bw-prof-row", "routes": ".bw-route-map", "whatif": ".byway-whatif input",
              "own": ".byway-own .bw-own-element", "steady": ".byway-steady .bw-reserve li", "graph": ".bw-shelf-item",
+             "remote": ".byway-remote tbody tr", "along": ".bw-along-chart", "anatomies": ".byway-anatomies .bw-empty",
              "head": ".byway-head-box .gl-container canvas"}  # fmt: skip
     for name, what in shows.items():
         page.locator(f".byway-tabs [data-key={name}]").click()

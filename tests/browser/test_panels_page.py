@@ -25,11 +25,12 @@ from byway.widgets import (
     number_named,
 )
 from byway.widgets.accounts.own import OwnAccountPanel
+from byway.widgets.accounts.remote import RemotePanel
 from byway.widgets.accounts.steady import SteadyPanel
 from byway.widgets.accounts.whatif import NOTHING, WhatIfPanel
 
 PANELS = (HitsPanel, FindingsPanel, AccountsPanel, ProfilePanel, RoutesPanel, GraphPanel, WhatIfPanel, OwnAccountPanel,
-          SteadyPanel)  # fmt: skip
+          SteadyPanel, RemotePanel)  # fmt: skip
 NUMBERS = "() => [...document.querySelectorAll('[data-name]')].map((n) => [n.dataset.name, Number(n.dataset.value)])"
 NAMELESS = """() => [...document.querySelectorAll('button, input, select, [role=radiogroup]')].filter((e) => {
   const label = e.labels?.[0]?.textContent || e.getAttribute('aria-label') || e.title || e.textContent

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from byway.knowledge.damage.profile import PROFILE_COLUMNS, course_profile
+from byway.knowledge.damage.profile import PROFILE_COLUMNS, PROFILE_FACTS, course_profile, profile_facts
 from byway.knowledge.faults import BywayError
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.lesion.shapes import sphere_mask
@@ -79,3 +79,20 @@ def test_unknown_segments_and_bins_are_refused():
         course_profile(Lesion(), straight(), "line.hole", "left")
     with pytest.raises(BywayError, match="more than 0 mm"):
         course_profile(Lesion(), straight(), "line.whole@left", bin_mm=0)
+
+
+def test_a_profile_in_seven_numbers():
+    """The slab of the first test: hit from 39 to 45 mm of 60, at most 0.4 of the lines; an unhurt course has none."""
+    mask = np.zeros(TEMPLATE_GRID.shape, bool)
+    mask[55:62, 134 + 10 : 134 + 15, 72:76] = True
+    facts = profile_facts(course_profile(Lesion.from_mask(mask), straight(), "line.whole@left"))
+    assert tuple(facts) == PROFILE_FACTS
+    assert facts["length_mm"] == 60
+    assert facts["hit_from_start_mm"] == pytest.approx(39, abs=1.01)
+    assert facts["hit_from_end_mm"] == pytest.approx(15, abs=1.01)
+    assert facts["hit_from_start_mm"] + facts["hit_length_mm"] + facts["hit_from_end_mm"] == pytest.approx(60)
+    assert facts["peak_share"] == pytest.approx(0.4)
+    assert facts["peak_from_start_mm"] + facts["peak_from_end_mm"] == pytest.approx(60)
+    none = profile_facts(course_profile(Lesion(), straight(), "line.whole@left"))
+    assert none["peak_share"] == 0
+    assert np.isnan(none["hit_length_mm"])

@@ -17,13 +17,14 @@ from byway.knowledge.reasoning.explain import Explanation
 from byway.knowledge.reasoning.findings import Finding
 from byway.widgets import AccountsPanel, FindingsPanel, GraphPanel, HitsPanel, ProfilePanel, RoutesPanel, number_named
 from byway.widgets.accounts.own import OwnAccountPanel
+from byway.widgets.accounts.remote import RemotePanel
 from byway.widgets.accounts.steady import SteadyPanel
 from byway.widgets.accounts.whatif import NOTHING, WhatIfPanel
 from byway.widgets.panel import Panel, state_of
 from byway.widgets.state import BenchState
 
 PANELS = (HitsPanel, FindingsPanel, AccountsPanel, ProfilePanel, RoutesPanel, GraphPanel, WhatIfPanel, OwnAccountPanel,
-          SteadyPanel)  # fmt: skip
+          SteadyPanel, RemotePanel)  # fmt: skip
 
 
 @pytest.fixture(scope="module")
