@@ -6,6 +6,7 @@ with a running number and a checksum; a line torn by a crash is recognised and p
 
 from __future__ import annotations
 
+import contextlib
 import importlib
 import importlib.util
 import json
@@ -58,11 +59,24 @@ class Journal:
         self.count += 1
         head = {"n": self.count, "time": now(), "author": self.author, "process": os.getpid()}
         body = json.dumps({**head, **entry}, separators=(",", ":"), ensure_ascii=False, allow_nan=False)
-        append_line(self.path, f"{_checksum(body)} {body}")
         if self._hold is None:
-            self._hold = os.open(self.path, os.O_RDWR)
-            _lock(self._hold)
+            self._hold = _begun(self.path)  # held before anything stands in it, so that nobody takes it for lost
+        append_line(self.path, f"{_checksum(body)} {body}")
         return self.count
+
+
+def _begun(path: Path) -> int:
+    """A new, locked, durable file; its handle."""
+    path.parent.mkdir(parents=True, exist_ok=True)
+    handle = os.open(path, os.O_RDWR | os.O_CREAT, 0o644)
+    _lock(handle)
+    with contextlib.suppress(OSError):  # some systems cannot open a folder
+        folder = os.open(path.parent, os.O_RDONLY)
+        try:
+            os.fsync(folder)
+        finally:
+            os.close(folder)
+    return handle
 
 
 def _lock(handle: int) -> bool:
