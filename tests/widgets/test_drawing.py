@@ -61,7 +61,7 @@ def snapshot(drawing: Drawing) -> tuple[bytes, Any]:
 
 
 @given(st.lists(moves, min_size=1, max_size=12))
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=15, deadline=None)
 def test_undo_and_redo_give_everything_back(scans: Scans, edits: list[dict[str, Any]]) -> None:
     """After any edits: undoing all gives every earlier state bit for bit, redoing all gives every later one."""
     drawing = Drawing()
@@ -88,7 +88,7 @@ def test_undo_and_redo_give_everything_back(scans: Scans, edits: list[dict[str, 
 
 
 @given(st.lists(st.one_of(strokes, solids, st.just({"op": "undo"})), min_size=1, max_size=8))
-@settings(max_examples=15, deadline=None)
+@settings(max_examples=8, deadline=None)
 def test_a_journal_makes_the_same_drawing(edits: list[dict[str, Any]]) -> None:
     """What the journal holds, after a trip through JSON, makes the same drawing and the same history again."""
     entries: list[dict[str, Any]] = []

@@ -145,10 +145,10 @@ export class Layers {
   }
 
   /** Outlines of every compartment on a slice: [{path, loops, look, style}]. */
-  compartments(plane, index, version) {
+  compartments(plane, index, version, place = "bits") {
     const { store } = this;
     if (!store.bits) return [];
-    return this.keep(`bits ${plane}`, `${index} ${version} ${store.styles.length}`, () => {
+    return this.keep(`${place} ${plane}`, `${index} ${version} ${store.styles.length}`, () => {
       const [width, height] = store.grid.size(plane);
       const bytes = store.grid.slice(store.bits, plane, index, new Uint8Array(width * height));
       let every = 0;

@@ -225,7 +225,7 @@ export class Move {
     matrix.translateSelf(-ca, -cb);
     const { look, layers, store } = this.view;
     if (source >= 0 && source < store.grid.shape[film.plane]) {
-      for (const { path, compartment } of layers.compartmentsAt(film.plane, source)) {
+      for (const { path, compartment } of layers.compartments(film.plane, source, store.edits, "moved")) {
         if (!look.moveAll && compartment !== look.compartment) continue;
         const placed = new Path2D();
         placed.addPath(path, matrix);
@@ -244,7 +244,7 @@ export class Move {
 
   options(words) {
     const text = this.box
-      ? `${this.shift.map((v) => (v > 0 ? `+${v}` : v)).join(", ")} mm · × ${this.scale.toFixed(2)}` : words.move_hint;
+      ? `${this.shift.map((v) => (v > 0 ? `+${v}` : String(v).replace("-", "\u2212"))).join(", ")} mm · × ${this.scale.toFixed(2)}` : words.move_hint;
     return h("span", { class: "bs-option-text" }, text);
   }
 }

@@ -13,6 +13,7 @@ export class Store {
     this.newest = 0; // running number of our newest change
     this.answered = 0;
     this.sentEdits = 0;
+    this.edits = 0; // moves on with every patch
     this.revision = null;
     this.grid = null;
     this.volumes = new Map();
@@ -174,6 +175,7 @@ export class Store {
         }
       }
     }
+    this.edits += 1;
     this.tell("bits", [i0, i1, j0, j1, k0, k1]);
   }
 

@@ -28,7 +28,6 @@ class View extends WithActions {
     this.cursor = [98, 134, 72];
     this.look = new LookState(store, (keys) => this.lookChanged(keys));
     this.layers = new Layers(store, this.look);
-    this.layers.compartmentsAt = (plane, index) => this.layers.compartments(plane, index, `at ${this.films[0].version}`);
     this.hand = new Hand(this);
     this.commands = commandsOf(this);
     this.build(el);
