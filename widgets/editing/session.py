@@ -20,10 +20,13 @@ from byway.knowledge.graph.layers import apply_overlays
 from byway.knowledge.graph.loading import base_content
 from byway.knowledge.graph.overlay_files import read_overlay, save_overlay
 from byway.knowledge.graph.overlays import Overlay
+from byway.knowledge.words import word
 from byway.widgets.state import BenchState
-from byway.widgets.words import word
 
 __all__ = ["Session", "usual_author"]
+
+
+_REMEMBERED = 3
 
 
 def usual_author() -> str:
@@ -63,7 +66,7 @@ class Session:
         self._seen: str | None = None
         self._case_folder: Path | None = None
         self._listed = False
-        self._ready: tuple[tuple[str, int], Any] | None = None
+        self._ready: dict[Any, Any] = {}
         self.below: list[tuple[str, Overlay]] = []
         self.editing = self._begin()
 
@@ -179,12 +182,18 @@ class Session:
         self.state.use_science(self.science_for(graph), case)
 
     def science_for(self, graph: Graph) -> Any:
-        """What answers from a graph; the latest one is remembered, so that what was tried is there when it is kept."""
-        key = (graph.content_hash, id(self.state.science))
-        if self._ready is None or self._ready[0] != key:
-            science: Any = self.state.science
-            self._ready = (key, science.with_graph(graph))
-        return self._ready[1]
+        """What answers from a graph; the latest few are remembered: what was tried, and what undo brings back."""
+        key = _whole(graph)
+        if key not in self._ready:
+            now = self.state.science
+            self._ready.setdefault(_whole(now.graph), now)
+            # One with the same places lends its geometry; undo then builds nothing.
+            same = (each for each in self._ready.values() if each.graph.anatomy_hash == graph.anatomy_hash)
+            self._ready[key] = next(same, now).with_graph(graph)
+        self._ready[key] = self._ready.pop(key)
+        for old in list(self._ready)[:-_REMEMBERED]:
+            del self._ready[old]
+        return self._ready[key]
 
     def lay(self, overlay: Overlay) -> None:
         """Take an overlay of another department in as a layer of its own, below one's own edits.
@@ -228,3 +237,8 @@ class Session:
             self.reload()
             raise
         self.use(self.editing.graph, mention_overlay(before, listed) if write else self.state.case)
+
+
+def _whole(graph: Graph) -> tuple[Any, ...]:
+    """All that tells one graph from another: records, disputes, and the layers that they came from."""
+    return graph.content_hash, graph.layers, tuple(graph.disputes.items())
