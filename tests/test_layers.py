@@ -25,7 +25,6 @@ ROOMS = (
     "byway.knowledge.cases",
     "byway.knowledge",
     "byway.knowledge.__main__",
-    "byway.widgets.words",
     "byway.widgets.front",
     "byway.widgets.wire",
     "byway.widgets.numbers",

@@ -18,6 +18,7 @@ from byway.knowledge.cases.model import CaseFile, PersonSpec
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.space.grid import TEMPLATE_GRID
+from byway.knowledge.words import section, word
 from byway.widgets.accounts import AccountsPanel
 from byway.widgets.findings import FindingsPanel
 from byway.widgets.front import load_css, load_esm
@@ -27,7 +28,6 @@ from byway.widgets.slices import SlicesPanel
 from byway.widgets.state import BenchState
 from byway.widgets.state.following import Following
 from byway.widgets.state.live import LiveScience
-from byway.widgets.words import section, word
 
 __all__ = ["Bench", "BenchHead", "bench"]
 

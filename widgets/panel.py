@@ -11,8 +11,8 @@ import traitlets as t
 from byway.knowledge.cases.wording import whose_words
 from byway.knowledge.faults import BywayError
 from byway.knowledge.graph.references import split_reference
+from byway.knowledge.words import section
 from byway.widgets.state import BenchState
-from byway.widgets.words import section
 
 __all__ = ["Panel", "claims_of", "element_words", "state_of", "whose_of"]
 

@@ -18,13 +18,13 @@ from byway.knowledge.faults import Fault
 from byway.knowledge.graph.graph import graph_from
 from byway.knowledge.graph.overlay_files import read_overlay
 from byway.knowledge.graph.overlays import overlay_text, parse_overlay
+from byway.knowledge.words import section
 from byway.widgets.editing import EditingPanel
 from byway.widgets.editing.forms import EDITABLE, fields_told, new_block
 from byway.widgets.editing.placing import field_of
 from byway.widgets.editing.sketch import course_sketch
 from byway.widgets.state import BenchState
 from byway.widgets.state.live import LiveScience
-from byway.widgets.words import section
 
 FIRST_CASE = Path(__file__).resolve().parents[2] / "notebooks" / "cases" / "first_case"
 WAYPOINTS = [[-58.0, -38.0, 10.0], [-36.0, -24.0, 32.0], [-50.0, 4.0, 24.0]]

@@ -8,10 +8,10 @@ import pandas as pd
 import traitlets as t
 
 from byway.knowledge.damage.profile import PROFILE_COLUMNS, profile_facts
+from byway.knowledge.words import word
 from byway.widgets.front import load_css, load_esm
 from byway.widgets.panel import Panel, element_words
 from byway.widgets.wire import plain
-from byway.widgets.words import word
 
 __all__ = ["AlongPanel"]
 

@@ -9,11 +9,11 @@ import numpy as np
 import plotly.graph_objects as go
 import traitlets as t
 
+from byway.knowledge.words import word
 from byway.widgets.front import load_css, load_esm
 from byway.widgets.head.surface import Surface
 from byway.widgets.head.wire import brain_surface, bundle_lines, lesion_surfaces, parcel_surface
 from byway.widgets.panel import Panel, element_words
-from byway.widgets.words import word
 
 __all__ = ["HeadPanel"]
 

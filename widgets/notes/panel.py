@@ -14,11 +14,11 @@ from byway.knowledge.cases.pdf import write_pdf
 from byway.knowledge.cases.report import write_report
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.graph.references import split_reference
+from byway.knowledge.words import word
 from byway.widgets.front import load_css, load_esm
 from byway.widgets.notes.wire import course_told, notes_told, places_of, standing_told, versions_told
 from byway.widgets.panel import Panel
 from byway.widgets.wire import plain
-from byway.widgets.words import word
 
 __all__ = ["NotesPanel"]
 

@@ -10,12 +10,12 @@ import numpy as np
 import traitlets as t
 
 from byway.knowledge.faults import BywayError
+from byway.knowledge.words import word
 from byway.widgets.front import load_css, load_esm
 from byway.widgets.panel import Panel
 from byway.widgets.slices.uploads import MOST_BYTES, Uploads
 from byway.widgets.state import BenchState
 from byway.widgets.wire import plain, send
-from byway.widgets.words import word
 
 __all__ = ["SlicesPanel"]
 

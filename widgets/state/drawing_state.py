@@ -12,12 +12,12 @@ import traitlets as t
 
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.lesion.lesion import Lesion
+from byway.knowledge.words import word
 from byway.widgets.state.casefiles import load_lesion, load_scan, save_drawing, unsaved_edits
 from byway.widgets.state.drawing import Change, Drawing, drawing_of
 from byway.widgets.state.edits import LEANS_ON_SCANS, apply_edit, bytes_edit
 from byway.widgets.state.history import unpacked_indices
 from byway.widgets.state.scans import Scans
-from byway.widgets.words import word
 
 __all__ = ["DrawingState", "Journal"]
 

@@ -23,11 +23,11 @@ from byway.knowledge.cases.versions import merged, settle_version
 from byway.knowledge.cases.watch import PERIOD_S, CaseWatch
 from byway.knowledge.faults import BywayError
 from byway.knowledge.reasoning.findings import Finding
+from byway.knowledge.words import word
 from byway.widgets.state.bench_state import BenchState
 from byway.widgets.state.casefiles import findings_spec
 from byway.widgets.state.edits import bytes_edit
 from byway.widgets.state.history import unpacked_indices
-from byway.widgets.words import word
 
 __all__ = ["UNNAMED", "Following", "unsaved"]
 

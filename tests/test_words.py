@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 
 from byway.knowledge.faults import BywayError
-from byway.widgets.words import ORIGINS, section, word, words
+from byway.knowledge.words import ORIGINS, section, word, words
 
 
 def test_every_word_has_text_and_origin() -> None:
