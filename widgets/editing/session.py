@@ -185,7 +185,7 @@ class Session:
         """What answers from a graph; the latest few are remembered: what was tried, and what undo brings back."""
         key = _whole(graph)
         if key not in self._ready:
-            now = self.state.science
+            now: Any = self.state.science
             self._ready.setdefault(_whole(now.graph), now)
             # One with the same places lends its geometry; undo then builds nothing.
             same = (each for each in self._ready.values() if each.graph.anatomy_hash == graph.anatomy_hash)
