@@ -16,11 +16,12 @@ from byway.knowledge.graph.edits import Edit, Trial, make_edit, use_draft, withd
 from byway.knowledge.graph.grammar import to_block
 from byway.knowledge.graph.overlays import ACTIONS, Action, Slot, overlay_text
 from byway.knowledge.space.grid import TEMPLATE_GRID
+from byway.knowledge.words import word
 from byway.widgets.editing.effects import Effects
 from byway.widgets.editing.forms import EDITABLE, fields_told, new_block
 from byway.widgets.editing.placing import faults_told
 from byway.widgets.editing.rivals import Rivals
-from byway.widgets.editing.session import Session, usual_author
+from byway.widgets.editing.session import Session
 from byway.widgets.editing.sketch import SLICE_STEP, course_sketch, slices_volume
 from byway.widgets.editing.visits import Incoming
 from byway.widgets.editing.wire import catalogue_of, changes_told, coverage_told, entries_told, picture_of
@@ -69,8 +70,9 @@ class EditingPanel(Panel):
     def __init__(self, source: Any, author: str = "", base: Content | None = None) -> None:
         self.session: Session | None = None
         self._base = base
-        self._author = author or usual_author()
         super().__init__(source)
+        # Never the computer's login name, which could say who somebody is.
+        self._author = author or str(getattr(self.state, "author", "")) or word("editing.unsigned")
         self.fields = dict(plain(fields_told()))
         self.effects = Effects(self.state, self._show_effect)
         self.visit = Incoming()

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import datetime
-import getpass
 from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
@@ -23,18 +22,9 @@ from byway.knowledge.graph.overlays import Overlay
 from byway.knowledge.words import word
 from byway.widgets.state import BenchState
 
-__all__ = ["Session", "usual_author"]
-
+__all__ = ["Session"]
 
 _REMEMBERED = 3
-
-
-def usual_author() -> str:
-    """Name under which this computer knows its user; shown, and to be changed by whoever edits."""
-    try:
-        return getpass.getuser()
-    except (OSError, KeyError, ImportError):
-        return word("editing.unsigned")
 
 
 class Session:
