@@ -39,7 +39,7 @@ class EditingPanel(Panel):
     ----------
     source : BenchState or Explanation
     author : str, optional
-        Whose overlay is edited; the computer's user by default, to be changed on the panel.
+        Whose overlay is edited; the bench's initials by default, to be changed on the panel.
     base : Content, optional
         What overlays lie on; the curated text where None.
 
