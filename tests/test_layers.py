@@ -169,3 +169,26 @@ def test_every_package_is_in_the_wheel() -> None:
     listed = set(tomllib.loads((ROOT / "pyproject.toml").read_text())["tool"]["setuptools"]["packages"])
     there = {module_name(path / "__init__.py") for path in {p.parent for p in modules().values()}}
     assert there == listed
+
+
+def test_every_data_file_is_in_the_wheel() -> None:
+    """Each file beside the code (text, front end, schema) is matched by a pattern of its package's data."""
+    import fnmatch
+    import tomllib
+
+    tool = tomllib.loads((ROOT / "pyproject.toml").read_text())["tool"]["setuptools"]
+    folders = {package: ROOT.joinpath(*package.split(".")[1:]) for package in tool["packages"]}
+    taken = {
+        path
+        for package, patterns in tool["package-data"].items()
+        for path in folders[package].rglob("*")
+        if any(fnmatch.fnmatch(path.relative_to(folders[package]).as_posix(), pattern) for pattern in patterns)
+        and path.relative_to(folders[package]).as_posix().count("/") == max(p.count("/") for p in patterns)
+    }
+    there = {
+        path
+        for top in ("knowledge", "widgets")
+        for path in (ROOT / top).rglob("*")
+        if path.is_file() and path.suffix not in (".py", ".pyc") and "__pycache__" not in path.parts
+    }
+    assert sorted(str(path.relative_to(ROOT)) for path in there - taken) == []
