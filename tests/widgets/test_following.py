@@ -111,6 +111,26 @@ def test_saved_changes_reach_the_other(two: tuple[BenchState, BenchState]) -> No
     there.save_case()  # nothing stands in the way of saving
 
 
+def test_overlays_that_somebody_names_are_reasoned_with(two: tuple[BenchState, BenchState], folder: Path) -> None:
+    """When one names an overlay in case.yaml, the other's questions go to the graph and geometry of that case."""
+    asked: list[tuple[str, ...]] = []
+    one, other = two
+    after = GraphOnly()
+
+    def for_case(case: Any) -> GraphOnly:
+        asked.append(case.spec.overlays)
+        return after
+
+    other.science.for_case = for_case  # type: ignore[method-assign]
+    (folder / "opinion.yaml").write_text("name: opinion\nauthor: AB\ndate: 2026-11-03\n")
+    one.set_case(one.case.with_spec(overlays=("opinion.yaml",)))
+    one.save_case()
+    other.following.poll()
+    assert asked == [("opinion.yaml",)]
+    assert other.science is after
+    assert other.case.spec.overlays == ("opinion.yaml",)
+
+
 def test_changes_of_different_fields_both_hold(two: tuple[BenchState, BenchState]) -> None:
     """One changes the stage and saves, the other has changed findings: it keeps them, takes the stage, and can save."""
     here, there = two

@@ -118,8 +118,14 @@ class BenchState(DrawingState):
         self._rest()
 
     def adopt(self, case: Any) -> None:
-        """Take in what somebody else wrote to the case; the drawing starts anew only where the lesion changed."""
-        if case.spec.lesion != self.case.spec.lesion:
+        """Take in what somebody else wrote to the case; the drawing starts anew only where the lesion changed.
+
+        Where its overlays or its own anatomy changed, what is asked from now on is the graph and geometry of those.
+        """
+        before = self.case.spec
+        if (case.spec.overlays, case.spec.anatomy) != (before.overlays, before.anatomy):
+            self.use_science(self.science.for_case(case))
+        if case.spec.lesion != before.lesion:
             self.open(case)
             return
         self.case = case

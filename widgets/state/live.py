@@ -11,7 +11,9 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from byway.knowledge.cases.anatomies import anatomies_of
+from byway.knowledge.cases.case import Case
 from byway.knowledge.cases.desk import Desk, desk_for, desk_with
+from byway.knowledge.cases.explaining import desk_of
 from byway.knowledge.damage.coverage import uncharted_map, uncharted_share
 from byway.knowledge.damage.ensemble import Ensemble, EnsembleSettings, ensemble
 from byway.knowledge.damage.index import DamageIndex
@@ -52,6 +54,10 @@ class LiveScience:
         if other.desk.index is self.desk.index:
             other._drawn = self._drawn
         return other
+
+    def for_case(self, case: Case) -> LiveScience:
+        """Answers on the desk of a case: the graph with its overlays, on its own anatomy where it brings any."""
+        return LiveScience(desk_of(case, progress=False), draws=self.draws)
 
     @property
     def geometry(self) -> Geometry:

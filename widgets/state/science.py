@@ -45,6 +45,9 @@ class Science(Protocol):
     def map_of(self, kind: str) -> NDArray[np.uint8] | None:
         """A map over the grid, 0 to 255: ``uncharted`` white matter; None where it is not known."""
 
+    def for_case(self, case: Any) -> Science:
+        """What answers for a case: the graph with its overlays, on its own anatomy where it brings any."""
+
 
 class NoScience:
     """Draws without reasoning: no geometry, no graph."""
@@ -67,3 +70,7 @@ class NoScience:
     def map_of(self, kind: str) -> NDArray[np.uint8] | None:
         """Nothing is known."""
         return None
+
+    def for_case(self, case: Any) -> Science:
+        """The same nothing."""
+        return self
