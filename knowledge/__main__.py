@@ -13,7 +13,7 @@ from pathlib import Path
 
 from byway.knowledge.cases import commands
 from byway.knowledge.cases.own import OwnLayer, folder_layer
-from byway.knowledge.faults import BywayError, Fault
+from byway.knowledge.faults import BywayError, Fault, nearest
 from byway.knowledge.words import word
 
 __all__ = ["main"]
@@ -35,7 +35,7 @@ def _layer(given: argparse.Namespace) -> OwnLayer | None:
 def _parser() -> argparse.ArgumentParser:
     parser = argparse.ArgumentParser(prog="byway", description=_help("byway"), epilog=_help("caution"))
     parser.add_argument("--version", action="version", version=commands.version())
-    rooms = parser.add_subparsers(dest="command", required=True, metavar="COMMAND")
+    rooms = parser.add_subparsers(dest="command", metavar="COMMAND")
 
     def add(
         name: str, to: argparse._SubParsersAction[argparse.ArgumentParser] = rooms, key: str = ""
@@ -94,6 +94,10 @@ def _parser() -> argparse.ArgumentParser:
     one.add_argument("--label", type=int, help=_help("damage_label"))
     one.set_defaults(run=lambda a: commands.new_from_mask(a.mask, a.folder, label=a.label))
 
+    one = add("signs")
+    one.add_argument("words", nargs="*", metavar="WORD", help=_help("signs_words"))
+    one.set_defaults(run=lambda a: commands.signs(a.words))
+
     graph = add("graph").add_subparsers(dest="what", required=True, metavar="WHAT")
     for name in ("check", "table", "diff", "export", "atlas"):
         one = add(name, graph, f"graph_{name}")
@@ -124,9 +128,24 @@ def _parser() -> argparse.ArgumentParser:
     return parser
 
 
+def _misunderstood(parser: argparse.ArgumentParser, command: str | None, rest: Sequence[str]) -> Fault:
+    """What to say of words that no command takes."""
+    rooms = next(action for action in parser._actions if isinstance(action, argparse._SubParsersAction))
+    if command is None:
+        found = f"no option {rest[0]!r}" if rest else "no command"
+        return Fault("command", "command line", found, ", ".join(rooms.choices), "byway --help says what each does")
+    options = rooms.choices[command]._option_string_actions
+    close = nearest(rest[0], options) or f"byway {command} --help"
+    return Fault("option", command, f"no option {rest[0]!r}", "", close)
+
+
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run one command; returns the exit code (0 done, 1 a check found faults, 2 bad input, 130 stopped)."""
-    given = _parser().parse_args(arguments)
+    parser = _parser()
+    given, rest = parser.parse_known_args(arguments)
+    if rest or given.command is None:
+        print(f"byway: {_misunderstood(parser, given.command, rest)}", file=sys.stderr)
+        return 2
     try:
         return int(given.run(given))
     except BywayError as error:

@@ -7,6 +7,7 @@ import json
 import re
 from pathlib import Path
 
+import nbformat
 import nibabel as nib
 import numpy as np
 import pytest
@@ -14,6 +15,7 @@ from numpy.typing import NDArray
 
 from byway.knowledge import read_lesion
 from byway.knowledge.__main__ import main
+from byway.knowledge.cases.making import bench_notebook, new_case
 from byway.knowledge.lesion.images import write_mask
 from byway.knowledge.lesion.shapes import ellipsoid_mask
 from byway.knowledge.space.grid import TEMPLATE_GRID
@@ -109,7 +111,7 @@ def _bad_masks(folder: Path) -> dict[str, tuple[Path, str]]:
         "empty": (_save(folder / "empty.nii.gz", np.zeros_like(ball)), "empty"),
         "NaN": (_save(folder / "nan.nii.gz", nan), "not finite"),
         "negative": (_save(folder / "neg.nii.gz", negative), "negative"),
-        "labels": (_save(folder / "labels.nii.gz", labels), "2, 3|2 .* 3"),
+        "labels": (_save(folder / "labels.nii.gz", labels), r"2.*3.*on the command line --label"),
         "no forms": (_save(folder / "forms.nii.gz", ball, None), "sform"),
         "other field of view": (_save(folder / "fov.nii.gz", ball, shifted), "mm"),
         "outside the brain": (_save(folder / "out.nii.gz", outside), "outside the brain"),
@@ -138,6 +140,8 @@ def test_bad_masks_get_one_clear_line(which: str, tmp_path: Path, capsys: pytest
         ("sign: repetition_defecit", "repetition_deficit"),
         ("sign: \"HP:9999999\"", "HP:9999999"),
         ("grade: bad", "case.yaml:9"),
+        ("sign: hemianopia", "did you mean homonymous_hemianopia"),
+        ("side: left", "expected side none; this sign has no side: leave `side` out"),
     ],
 )
 def test_bad_cases_get_one_clear_line(
@@ -157,6 +161,14 @@ def test_bad_cases_get_one_clear_line(
     assert said in err
     assert len(err.strip().splitlines()) == 1
     assert path.read_text() == text
+
+
+def test_no_draws_are_refused_in_words(capsys: pytest.CaptureFixture[str]) -> None:
+    """Zero draws get one line that says so, not the settings as code."""
+    code, _, err = run(capsys, "explain", DEMO, "--draws", 0)
+    assert code == 2
+    assert "0 draws; expected at least one draw" in err
+    assert "EnsembleSettings" not in err
 
 
 def test_a_bad_overlay_is_refused(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
@@ -183,3 +195,52 @@ def test_archive_goes_out_and_comes_back(mask: Path, tmp_path: Path, capsys: pyt
     assert run(capsys, "archive", "pack", tmp_path / "case", tmp_path / "case.zip")[0] == 0
     assert run(capsys, "archive", "unpack", tmp_path / "case.zip", tmp_path / "back")[0] == 0
     assert (tmp_path / "back" / "case.yaml").read_bytes() == (tmp_path / "case" / "case.yaml").read_bytes()
+
+
+def test_signs_lists_keys_and_sides(capsys: pytest.CaptureFixture[str]) -> None:
+    """Words narrow the list of signs; every row has key and sides; a word that no sign has is one line and exit 2."""
+    code, out, _ = run(capsys, "signs", "weakness")
+    assert code == 0
+    assert "arm_weakness left or right" in " ".join(out.split())
+    assert "anomia" not in out
+    code, _, err = run(capsys, "signs", "aphasiia")
+    assert code == 2
+    assert len(err.strip().splitlines()) == 1
+
+
+@pytest.mark.parametrize(
+    ("words", "said"),
+    [
+        (["--foo"], "no option '--foo'; expected open, explain"),
+        (["explain", "x", "--reprt", "y"], "did you mean --report"),
+        ([], "no command; expected open, explain"),
+        (["explain", str(DEMO), "--summary"], "--summary without a report"),
+    ],
+)
+def test_misunderstood_words_get_one_line(words: list[str], said: str, capsys: pytest.CaptureFixture[str]) -> None:
+    """An option or command that does not exist, or makes no sense, gets one line that says what would."""
+    code, _, err = run(capsys, *words)
+    assert code == 2
+    assert said in err
+    assert len(err.strip().splitlines()) == 1
+
+
+def test_new_says_what_it_did_to_the_mask(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """A mask on a 2 mm grid is resampled into the new case, and stderr says so."""
+    affine = AFFINE.copy()
+    affine[:3, :3] *= 2
+    _save(tmp_path / "coarse.nii.gz", np.ascontiguousarray(_ball()[::2, ::2, ::2]), affine)
+    code, _, err = run(capsys, "new", tmp_path / "coarse.nii.gz", tmp_path / "case")
+    assert code == 0
+    assert "resampled from a 2 mm grid" in err
+
+
+def test_a_case_folder_gets_a_notebook_for_its_bench(mask: Path, tmp_path: Path) -> None:
+    """The notebook that ``byway open CASE`` opens shows the bench on that folder, and is not written over."""
+    folder = new_case(tmp_path / "case", mask).folder
+    path = bench_notebook(folder)
+    book = nbformat.read(path, as_version=4)
+    nbformat.validate(book)
+    assert book.cells[0].source.endswith('bench(".")')
+    path.write_text("mine")
+    assert bench_notebook(folder).read_text() == "mine"

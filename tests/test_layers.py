@@ -182,8 +182,11 @@ def test_every_data_file_is_in_the_wheel() -> None:
         path
         for package, patterns in tool["package-data"].items()
         for path in folders[package].rglob("*")
-        if any(fnmatch.fnmatch(path.relative_to(folders[package]).as_posix(), pattern) for pattern in patterns)
-        and path.relative_to(folders[package]).as_posix().count("/") == max(p.count("/") for p in patterns)
+        if any(
+            fnmatch.fnmatch(name := path.relative_to(folders[package]).as_posix(), pattern)
+            and name.count("/") == pattern.count("/")
+            for pattern in patterns
+        )
     }
     there = {
         path

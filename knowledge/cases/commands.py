@@ -22,7 +22,7 @@ from byway.knowledge.cases.course import course_of_case
 from byway.knowledge.cases.desk import desk_for, desk_own
 from byway.knowledge.cases.explaining import damage_of, desk_of, explain
 from byway.knowledge.cases.files import case_path
-from byway.knowledge.cases.making import new_case
+from byway.knowledge.cases.making import bench_notebook, new_case
 from byway.knowledge.cases.own import OwnLayer
 from byway.knowledge.cases.pages import Note, Pages
 from byway.knowledge.cases.pdf import write_pdf
@@ -31,8 +31,9 @@ from byway.knowledge.cases.report import write_report
 from byway.knowledge.cases.similar import similar_to
 from byway.knowledge.cases.tables import write_tables
 from byway.knowledge.cases.wording import explanation_text, whose_words
-from byway.knowledge.faults import BywayError, CaseError, Fault
+from byway.knowledge.faults import BywayError, CaseError, Fault, nearest
 from byway.knowledge.graph import commands as graph_commands
+from byway.knowledge.graph.loading import load_graph
 from byway.knowledge.lesion.images import read_lesion
 from byway.knowledge.words import word
 
@@ -52,13 +53,15 @@ __all__ = [
     "graph_table",
     "new_from_mask",
     "open_notebook",
+    "signs",
     "similar",
     "version",
 ]
 
 # JupyterLab would ask the network for news, newer versions and extensions; hospital networks are closed.
 QUIET = ("--LabApp.news_url=None", "--LabApp.check_for_updates_class=jupyterlab.NeverCheckForUpdate",
-         "--LabApp.extension_manager=readonly")  # fmt: skip
+         "--LabApp.extension_manager=readonly",
+         f"--LabApp.app_settings_dir={Path(__file__).parent / 'lab_settings'}")  # fmt: skip
 NOTEBOOKS = Path(__file__).resolve().parents[2] / "notebooks"
 
 
@@ -75,8 +78,13 @@ def _say(text: str) -> None:
 
 
 def open_notebook(notebook: Path | None, *, browser: bool) -> int:
-    """Build the geometry if it is not there, then run JupyterLab on a notebook, on loopback with its usual token."""
+    """Build the geometry if it is not there, then run JupyterLab on a notebook, on loopback with its usual token.
+
+    A case folder may be named instead: its ``bench.ipynb`` is opened, and made where there is none.
+    """
     path = (notebook or NOTEBOOKS / "first_case.ipynb").resolve()
+    if path.is_dir():
+        path = bench_notebook(case_path(path).parent)
     if not path.is_file():
         where = "the name of a notebook" if notebook else word("command.no_notebook")
         raise BywayError(Fault("no-notebook", str(path), "no such notebook", where, "name one"))
@@ -87,8 +95,12 @@ def open_notebook(notebook: Path | None, *, browser: bool) -> int:
                f"--LabApp.default_url=/lab/tree/{path.name}", *QUIET]  # fmt: skip
     if getattr(os, "geteuid", lambda: 1)() == 0:
         command.append("--allow-root")
+    os.chdir(path.parent)
+    sys.stdout.flush()
+    if os.name == "posix":
+        os.execv(sys.executable, command)  # JupyterLab takes this process's place: stopping one stops the other
     try:
-        return subprocess.call(command, cwd=path.parent)
+        return subprocess.call(command)
     except KeyboardInterrupt:
         return 0
 
@@ -106,6 +118,8 @@ def explain_case(
     summary: bool = False, notes: str = "all",
 ) -> int:  # fmt: skip
     """Explain a case; print words or JSON, and write report, PDF and tables where they are asked for."""
+    if summary and report is None and pdf is None:
+        raise CaseError(Fault("summary", "explain", "--summary without a report", "--report FILE or --pdf FILE"))
     case = open_case(path)
     explanation = explain(case, draws=draws)
     if as_json:
@@ -222,9 +236,30 @@ def anatomy_compare(path: Path, *, csv: Path | None) -> int:
 def new_from_mask(mask: Path, folder: Path, *, label: int | None) -> int:
     """Make a case folder from a mask."""
     case = new_case(folder, mask, label=label)
+    for note in read_lesion(mask, label=label).notes:
+        _say(f"{mask.name}: {note}")
     for trace in image_traces(mask):
         _say(f"left behind, since it could identify a person: {trace.kind} ({trace.place} of {trace.file})")
     print(f"{case.path}\nnext: add findings there or on the bench, then: byway explain {folder}")
+    return 0
+
+
+def signs(words: Sequence[str]) -> int:
+    """Print the signs whose key, name or domain has every word, with the sides that a finding of each takes."""
+    graph = load_graph()
+    rows = []
+    for sign in graph.signs.values():
+        text = f"{sign.key} {sign.name} {sign.domain} {sign.hpo.id if sign.hpo else ''}".lower().replace("_", " ")
+        if all(each.lower().replace("_", " ") in text for each in words):
+            sides = " or ".join(one.rpartition("@")[2] for one in graph.sign_ids(sign.key))
+            rows.append((sign.key, sides, sign.name, sign.hpo.id if sign.hpo else ""))
+    if not rows:
+        found = f"no sign with {' '.join(words)!r}"
+        close = nearest("_".join(words), graph.signs)
+        raise BywayError(Fault("no-signs", "signs", found, "part of a key, name or domain", close))
+    table = pd.DataFrame(rows, columns=["sign", "side", "name", "hpo"])
+    with pd.option_context("display.width", 200, "display.max_rows", None, "display.max_colwidth", 70):
+        print(table.to_string(index=False))
     return 0
 
 

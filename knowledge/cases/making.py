@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import itertools
+import json
 import re
 from pathlib import Path
 
+from byway.knowledge.atomic import write_text
 from byway.knowledge.cases.case import Case, open_case
 from byway.knowledge.cases.files import write_case
 from byway.knowledge.cases.model import CaseFile
@@ -89,3 +91,15 @@ def add_scan(case: Case, path: str | Path, sequence: str = "unknown") -> tuple[C
     left = stripped_image(source, case.folder / name)
     scans = [*(scan.model_dump() for scan in case.spec.scans), {"name": word, "file": name, "sequence": sequence}]
     return case.with_spec(scans=scans).save(), left
+
+
+def bench_notebook(folder: Path) -> Path:
+    """The notebook of a case folder that shows the bench on it; made where there is none, else left as it is."""
+    path = folder / "bench.ipynb"
+    if not path.exists():
+        cell = {"cell_type": "code", "execution_count": None, "id": "bench", "metadata": {}, "outputs": [],
+                "source": 'from byway.widgets import bench\n\nbench(".")'}  # fmt: skip
+        kernel = {"name": "python3", "display_name": "Python 3", "language": "python"}
+        book = {"cells": [cell], "metadata": {"kernelspec": kernel}, "nbformat": 4, "nbformat_minor": 5}
+        write_text(path, json.dumps(book, indent=1) + "\n")
+    return path
