@@ -97,7 +97,7 @@ def bench_notebook(folder: Path) -> Path:
     """The notebook of a case folder that shows the bench on it; made where there is none, else left as it is."""
     path = folder / "bench.ipynb"
     if not path.exists():
-        cell = {"cell_type": "code", "execution_count": None, "id": "bench", "metadata": {}, "outputs": [],
+        cell: dict[str, object] = {"cell_type": "code", "execution_count": None, "id": "bench", "metadata": {}, "outputs": [],
                 "source": 'from byway.widgets import bench\n\nbench(".")'}  # fmt: skip
         kernel = {"name": "python3", "display_name": "Python 3", "language": "python"}
         book = {"cells": [cell], "metadata": {"kernelspec": kernel}, "nbformat": 4, "nbformat_minor": 5}
