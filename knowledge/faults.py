@@ -7,10 +7,15 @@ them. Bad input raises :class:`BywayError` (or a subclass), whose ``str()`` is o
 from __future__ import annotations
 
 import difflib
+import re
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 
 __all__ = ["BywayError", "CaseError", "Fault", "FaultReport", "GraphError", "ImageError", "nearest"]
+
+
+SHORTEST_PART = 3
+"""Letters that a part of a key has at least to suggest the key: nearly every key contains any two letters."""
 
 
 @dataclass(frozen=True)
@@ -109,10 +114,24 @@ class FaultReport:
 
 
 def nearest(word: str, known: Iterable[str], count: int = 3) -> str:
-    """Suggest known keys near a misspelt one, as ``"did you mean a, b?"``, or an empty string.
+    """Suggest known keys near a misspelt or shortened one, as ``"did you mean a, b?"``, or an empty string.
+
+    Keys with a word that starts with the given one come first, then those that contain it, then those spelt alike.
 
     >>> nearest("hemipareses", ["hemiparesis", "apathy"])
     'did you mean hemiparesis?'
+    >>> nearest("hemianopia", ["hemiplegia", "homonymous_hemianopia"])
+    'did you mean homonymous_hemianopia, hemiplegia?'
     """
-    close = difflib.get_close_matches(word, list(known), n=count, cutoff=0.6)
+    keys, part = list(dict.fromkeys(known)), word.casefold()
+    holding = [key for key in keys if part in key.casefold()] if len(part) >= SHORTEST_PART else []
+    starting = [key for key in holding if any(each.startswith(part) for each in _starts(key.casefold()))]
+    alike = difflib.get_close_matches(word, keys, n=count, cutoff=0.6)
+    close = list(dict.fromkeys([*starting, *holding, *alike]))[:count]
     return f"did you mean {', '.join(close)}?" if close else ""
+
+
+def _starts(key: str) -> list[str]:
+    """A key from each of its words on, so that several words of it are found too."""
+    breaks = [match.end() for match in re.finditer(r"[^a-z0-9]+", key)]
+    return [key[at:] for at in (0, *breaks)]

@@ -6,18 +6,21 @@ is too large to be text somebody reviewed.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, TypeVar
+from types import MappingProxyType
+from typing import Any, TypeVar, get_args
 
 import yaml
 from pydantic import BaseModel, ValidationError
 
-from byway.knowledge.faults import BywayError, Fault
+from byway.knowledge.faults import BywayError, Fault, nearest
 
 __all__ = ["Lined", "parse_yaml", "read_yaml", "validate"]
 
 MOST_BYTES = 5_000_000
+SEE_FORMAT = "see the README's case format"
 Loader: Any = getattr(yaml, "CSafeLoader", yaml.SafeLoader)
 
 
@@ -132,8 +135,24 @@ def _value(
 Model = TypeVar("Model", bound=BaseModel)
 
 
-def validate(model: type[Model], read: Lined, error: type[BywayError] = BywayError) -> Model:
+def validate(
+    model: type[Model],
+    read: Lined,
+    error: type[BywayError] = BywayError,
+    expected: Mapping[str, str] = MappingProxyType({}),
+) -> Model:
     """Make a pydantic record of what was read; each of its errors becomes a fault with its line.
+
+    Parameters
+    ----------
+    model : type
+        The record.
+    read : Lined
+        What was read.
+    error : type
+        What to raise.
+    expected : mapping of field name to str
+        What a field holds, in words, where the record's own message would say it in signs.
 
     Raises
     ------
@@ -146,6 +165,33 @@ def validate(model: type[Model], read: Lined, error: type[BywayError] = BywayErr
         faults = []
         for item in problem.errors(include_url=False):
             place = tuple(item["loc"])
-            found = "" if item["type"] == "missing" else f" (found {item['input']!r:.60})"
-            faults.append(Fault("type", read.where(place), f"{item['msg']}{found}", "", "see the README's case format"))
+            where, name = read.where(place), str(place[-1]) if place else ""
+            if item["type"] == "extra_forbidden":
+                known = _fields_at(model, place[:-1])
+                hint = nearest(name, known) or (f"known: {', '.join(known)}" if known else "")
+                faults.append(Fault("unknown-field", where, f"no field {name!r}", "", hint or SEE_FORMAT))
+                continue
+            found = "" if item["type"] == "missing" else f"{item['input']!r:.60}"
+            if found and name in expected:
+                faults.append(Fault("type", where, found, expected[name]))
+            else:
+                said = f"{item['msg']} (found {found})" if found else item["msg"]
+                faults.append(Fault("type", where, said, "", SEE_FORMAT))
         raise error(*faults) from problem
+
+
+def _fields_at(model: type[BaseModel], place: tuple[Any, ...]) -> list[str]:
+    """Fields of the record that stands at a place within another; none where no record stands there."""
+    here: list[Any] = [model]
+    for step in place:
+        if isinstance(step, int):
+            continue  # the members of a list are of the kind that its field holds
+        fields = [each.model_fields[step] for each in here if step in each.model_fields]
+        here = [record for field in fields for record in _records_in(field.annotation)]
+    return [name for record in here for name in record.model_fields]
+
+
+def _records_in(annotation: Any) -> list[Any]:
+    if isinstance(annotation, type) and issubclass(annotation, BaseModel):
+        return [annotation]
+    return [record for part in get_args(annotation) for record in _records_in(part)]

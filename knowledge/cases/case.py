@@ -93,9 +93,11 @@ class Case:
             key = self._sign_key(spec.sign, by_hpo, graph, i)
             sign_id = f"{key}@{spec.side}"
             if sign_id not in graph.sign_ids(key):
-                sides = ", ".join(name.rpartition("@")[2] for name in graph.sign_ids(key))
+                sides = [name.rpartition("@")[2] for name in graph.sign_ids(key)]
+                advice = ("this sign has no side: leave `side` out" if sides == ["none"]
+                          else "give the side of the body or field on which it is seen")  # fmt: skip
                 raise CaseError(Fault("side", self._where("findings", i, "side"), f"{key} with side {spec.side}",
-                                      f"side {sides}", "give the side of the body or field"))  # fmt: skip
+                                      f"side {' or '.join(sides)}", advice))  # fmt: skip
             once = (key, spec.side, spec.date)
             if once in seen:
                 raise CaseError(Fault("twice", self._where("findings", i), f"{sign_id} stands twice for one date",

@@ -22,6 +22,10 @@ MIGRATIONS: dict[int, Callable[[dict[str, Any]], dict[str, Any]]] = {}
 A case is migrated in memory when it is read; the file stays as it is until somebody saves."""
 
 
+EXPECTED = {"age_band": "an age band such as 60-69 or 80+, or unknown"}
+"""What fields hold whose pattern says little to a reader."""
+
+
 def case_path(path: str | Path) -> Path:
     """The case.yaml that a folder or a file names.
 
@@ -63,7 +67,7 @@ def read_case(path: Path) -> tuple[CaseFile, Lined]:
                                   "no way leads from there; the file is as it was"))  # fmt: skip
         value = {**MIGRATIONS[version](value), "schema_version": version + 1}
         version += 1
-    return validate(CaseFile, Lined(value, read.lines, read.name), CaseError), read
+    return validate(CaseFile, Lined(value, read.lines, read.name), CaseError, EXPECTED), read
 
 
 def inside(folder: Path, name: str) -> Path:

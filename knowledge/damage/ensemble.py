@@ -70,11 +70,21 @@ class EnsembleSettings:
     spread_scale: float = 1.0
 
     def __post_init__(self) -> None:
-        amounts = (self.boundary_sd_mm, self.jitter_mm, self.jitter_deg, self.departure_mm or 0.0, self.rim_mm,
-                   self.spread_scale)  # fmt: skip
-        if self.draws < 1 or not all(0 <= x < 60 for x in amounts) or not 0 <= self.rim_effect <= 1:
-            raise BywayError(Fault("ensemble-settings", "ensemble", repr(self),
-                                   "at least one draw, amounts of 0 to 60 mm, a rim effect of 0 to 1"))  # fmt: skip
+        amounts = {
+            "a boundary's doubt of {:g} mm": self.boundary_sd_mm,
+            "a registration shift of {:g} mm": self.jitter_mm,
+            "a registration turn of {:g} degrees": self.jitter_deg,
+            "a boundary's departure of {:g} mm": self.departure_mm or 0.0,
+            "a rim of {:g} mm": self.rim_mm,
+            "a spread between people times {:g}": self.spread_scale,
+        }
+        wrong = [f"{self.draws} draws"] if self.draws < 1 else []
+        wrong += [words.format(amount) for words, amount in amounts.items() if not 0 <= amount < 60]
+        if not 0 <= self.rim_effect <= 1:
+            wrong.append(f"a rim effect of {self.rim_effect:g}")
+        if wrong:
+            right = "at least one draw, amounts from 0 to below 60, a rim effect of 0 to 1"
+            raise BywayError(Fault("ensemble-settings", "virtual anatomies", ", ".join(wrong), right))
 
     @classmethod
     def from_norms(cls, norms: Norms, lesion: Lesion, *, draws: int = 200, seed: int = 0) -> EnsembleSettings:

@@ -243,7 +243,7 @@ def _mask_value(file: Path, values: Values, label: int | None) -> tuple[list[Any
         raise refusal("graded", file, f"a graded map (values from {values.least:g} to {values.most:g})",
                "a mask of 0 and 1", "read it as a graded effect map, or threshold it")  # fmt: skip
     raise refusal("labels", file, f"{len(values.counts)} labels ({_label_words(values)})", "a mask of 0 and 1",
-           "choose one with label=")  # fmt: skip
+           "choose one with label= (on the command line --label)")  # fmt: skip
 
 
 def _label_words(values: Values) -> str:

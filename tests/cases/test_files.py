@@ -43,6 +43,14 @@ def test_vignettes_are_cases(vignette: dict, tmp_path: Path) -> None:
     [
         ("stage: later\n", r"case\.yaml:1 stage: .*acute.*later"),
         ("stage: acute\nlesions: {}\n", r"case\.yaml:2 lesions"),
+        ("stage: acute\nfinding: []\n", r"case\.yaml:2 finding: no field 'finding'; did you mean findings\?$"),
+        (
+            "stage: acute\nlesion:\n  compartments:\n  - {name: a, kind: core, efect: 1, effect: 1, file: a.nii}\n",
+            r"yaml:4 .*no field 'efect'; did you mean effect\?",
+        ),
+        ("stage: acute\nperson: {x: 1}\n", r"no field 'x'; known: handedness, age_band, pseudonym"),
+        ("stage: acute\nperson: {age_band: sixty}\n", r"age_band: 'sixty'; expected an age band such as 60-69 or 80\+"),
+        ("stage: acute\nperson: {age_band: 64}\n", r"age_band: 64; expected an age band such as 60-69 or 80\+"),
         ("stage: acute\nperson:\n  handedness: both\n", r"case\.yaml:3 person\.handedness"),
         ("stage: acute\nfindings:\n- {sign: aphasia}\n", r"case\.yaml:3 findings\.0\.grade"),
         ("stage: acute\nstage: acute\n", r"case\.yaml:2 stage: a key that stands twice"),
