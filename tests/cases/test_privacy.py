@@ -8,13 +8,13 @@ import nibabel as nib
 import numpy as np
 import pytest
 
-from byway.knowledge.cases.files import dump_case
+from byway.knowledge.cases.files import dump_case, write_case
 from byway.knowledge.cases.journal import Journal
 from byway.knowledge.cases.making import add_scan, new_case
 from byway.knowledge.cases.model import CaseFile
 from byway.knowledge.cases.pages import Note, Pages
 from byway.knowledge.cases.privacy import identifying_traces, stripped_image, traces_table
-from byway.knowledge.faults import ImageError
+from byway.knowledge.faults import CaseError, ImageError
 from byway.knowledge.space.grid import TEMPLATE_GRID
 
 
@@ -29,6 +29,19 @@ def test_an_invented_leak_is_listed(tmp_path: Path) -> None:
     assert ("case.yaml", "a long number") in kinds
     assert ("case.yaml", "a title with a name") in kinds
     assert ("scan_20200131.nii.gz", "a date") in kinds
+
+
+def test_a_version_kept_beside_is_no_trace(tmp_path: Path) -> None:
+    """The name that byway gives to the version that lost a race is its own, and no number of a person's."""
+    path = tmp_path / "case.yaml"
+    write_case(path, CaseFile(stage="acute"), None)
+    for _ in range(20):
+        with pytest.raises(CaseError, match="yours is kept"):
+            write_case(path, CaseFile(stage="chronic"), None)
+    assert len(list(tmp_path.iterdir())) == 21
+    assert identifying_traces(tmp_path) == []
+    (tmp_path / "case.0190123456.yaml").write_text("title: record 7654321.\n")
+    assert [trace.found for trace in identifying_traces(tmp_path)] == ["0190123456", "7654321"]
 
 
 def test_a_clean_case_lists_nothing(tmp_path: Path) -> None:
