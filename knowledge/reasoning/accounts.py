@@ -26,6 +26,8 @@ __all__ = ["LIKELY", "Account", "FoundSign", "build_account", "title_of"]
 LIKELY = 0.5
 """P(sign) from which an account is said to explain a finding, or to predict a sign that was not found."""
 
+MOST_SILENT = 3  # silenced regions that a card writes out
+
 _MOVED = 0.05  # change of what a route carries from which a card says so
 _WEIGHTY = 0.05  # share of the explained loss from which an element may stand in the title
 
@@ -270,8 +272,12 @@ def _cautions(
     if scenario.outside == "yes":
         said.append("A cause outside the lesion is a rate, not a mechanism: look for it.")
     if scenario.remote == "yes":
-        before = reckoning.damage_of(Scenario(**{**vars(scenario), "remote": "no"})).mean(axis=0)
-        said += [f"{words}." for words in named_regions(reckoning.prepared.remote, graph, before)[:3]]
+        before = reckoning.damage_of(Scenario(**{**vars(scenario), "remote": "no"}))
+        silent = named_regions(reckoning.prepared.remote, graph, before, tuple(elements))
+        said += [f"{words}." for words in silent[:MOST_SILENT]]
+        if len(silent) > MOST_SILENT:
+            more = len(silent) - MOST_SILENT
+            said.append(f"{more} more region{'s' * (more > 1)} may fall silent: see the regions that lost their input.")
     if told and not any(each.found != "absent" for each in told):
         said.append("Nothing was found: the account says what the damage would lead one to fear, not what is there.")
     return tuple(said)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from typing import Protocol
 
 import numpy as np
@@ -10,7 +11,7 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from byway.knowledge.graph.graph import Graph
-from byway.knowledge.reasoning.accounts import build_account, title_of
+from byway.knowledge.reasoning.accounts import Account, build_account, title_of
 from byway.knowledge.reasoning.explanation import Explanation, Situation
 from byway.knowledge.reasoning.findings import Finding, check_findings
 from byway.knowledge.reasoning.grouping import group_scenarios, kind_of
@@ -18,7 +19,7 @@ from byway.knowledge.reasoning.ledger import ledgers
 from byway.knowledge.reasoning.next_tests import next_axes, next_images, outlook
 from byway.knowledge.reasoning.posterior import SCENARIOS, Reckoning, reckon
 from byway.knowledge.reasoning.prepared import prepare
-from byway.knowledge.reasoning.remote import remote_table
+from byway.knowledge.reasoning.remote import blamed_regions, remote_table
 from byway.knowledge.reasoning.scenarios import Priors, axis_priors, headroom_of
 from byway.knowledge.reasoning.tables import function_table, sign_table
 from byway.knowledge.reasoning.wording import CAUTION
@@ -126,7 +127,7 @@ def explain_findings(
         next_tests=ahead.table(reckoning, every_title),
         next_images=next_images(reckoning, grouping),
         next_axes=next_axes(reckoning, grouping),
-        remote=remote_table(prepared.remote, graph, np.asarray(damage.share, np.float32)),
+        remote=_remote_table(reckoning, accounts),
         uncharted_share=uncharted_share,
         caution=CAUTION,
         situation=Situation(person.handedness, stage, cause, priors),
@@ -134,6 +135,19 @@ def explain_findings(
         grouping=grouping,
         outlook=ahead,
     )
+
+
+def _remote_table(reckoning: Reckoning, accounts: Sequence[Account]) -> pd.DataFrame:
+    """Regions that lost input as drawn, and every region that an account names as silenced."""
+    remote = reckoning.prepared.remote
+    silenced: dict[int, float] = {}
+    drawn = reckoning.damage_of(SCENARIOS[0])
+    pairs = [(drawn, ())] + [(reckoning.damage_of(replace(each.scenario, remote="no")), each.elements)
+                             for each in accounts if each.scenario.remote == "yes"]  # fmt: skip
+    for damage, elements in pairs:
+        for region, share in blamed_regions(remote, damage, elements).items():
+            silenced[region] = max(share, silenced.get(region, 0.0))
+    return remote_table(remote, reckoning.prepared.graph, drawn.mean(axis=0), silenced=silenced)
 
 
 def _damage_table(reckoning: Reckoning, damage: _Damage) -> pd.DataFrame:

@@ -5,10 +5,13 @@ segments that meet at a junction inside white matter pass input on. A region's l
 connections that is cut on the way, or whose far region is gone; only charted connections count, and a region with few
 of them loses a large share easily. Where it reaches the norm
 ``remote_input_loss_threshold``, the region may be silenced in proportion (diaschisis: von Monakow 1914, from memory).
+Diaschisis is described for cortex, thalamus, basal ganglia and cerebellum; regions of the brainstem and of white matter
+pass input on but are never silenced from afar (common practice, no source).
 """
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import networkx as nx
@@ -18,11 +21,20 @@ from numpy.typing import NDArray
 
 from byway.knowledge.graph.graph import Graph
 
-__all__ = ["Connection", "RemoteModel", "named_regions", "remote_model", "remote_table", "segment_ends"]
+__all__ = [
+    "LEAST_SILENCED", "NEVER_SILENT", "Connection", "RemoteModel", "blamed_regions", "named_regions", "remote_model",
+    "remote_table", "segment_ends",
+]  # fmt: skip
 
 Array = NDArray[np.float32]
 
 _OWN_DAMAGE = 0.5  # a region with more damage of its own is damaged, not silenced from afar
+
+NEVER_SILENT = frozenset({"brainstem", "white_matter"})
+"""Tissues for which no diaschisis is described. Common practice, no source."""
+
+LEAST_SILENCED = 0.1
+"""Share of the draws in which a region must be silenced for an account to name it without resting on it."""
 
 
 @dataclass(frozen=True)
@@ -49,15 +61,18 @@ class RemoteModel:
         Share of lost input from which a region may be silenced.
     effect : float
         Damage of a silenced region that lost all input.
+    exempt : frozenset of int
+        Regions that are never silenced from afar, by the tissue that they are made of.
     """
 
     element_ids: tuple[str, ...]
     connections: tuple[Connection, ...]
     threshold: float
     effect: float
+    exempt: frozenset[int] = frozenset()
 
     def input_loss(self, damage: Array) -> dict[int, Array]:
-        """Share of input lost by each region that lost any.
+        """Share of input lost by each region that lost any and is not exempt.
 
         Parameters
         ----------
@@ -73,6 +88,8 @@ class RemoteModel:
         total: dict[int, float] = {}
         lost: dict[int, Array] = {}
         for link in self.connections:
+            if link.region in self.exempt:
+                continue
             total[link.region] = total.get(link.region, 0.0) + link.weight
             parts = [*link.segments, *(() if link.far is None else (link.far,))]
             reached = [part for part in parts if hit[part]]
@@ -94,6 +111,15 @@ class RemoteModel:
             extra = np.where(share >= self.threshold, np.float32(self.effect) * share, np.float32(0.0))
             extended[region] = np.maximum(damage[region], extra).astype(np.float32)
         return extended
+
+    def silenced_shares(self, damage: Array) -> dict[int, float]:
+        """Share of the states in which each region is silenced and not much damaged itself; regions above 0 only."""
+        shares = {}
+        for region, lost in self.input_loss(damage).items():
+            share = float(((lost >= self.threshold) & (damage[region] < _OWN_DAMAGE)).mean())
+            if share > 0.0:
+                shares[region] = share
+        return shares
 
 
 def remote_model(graph: Graph, element_ids: tuple[str, ...]) -> RemoteModel:
@@ -138,18 +164,29 @@ def remote_model(graph: Graph, element_ids: tuple[str, ...]) -> RemoteModel:
         tuple(connections),
         graph.norm("remote_input_loss_threshold"),
         graph.norm("remote_effect_size"),
+        frozenset(i for element, i in number.items() if _tissue(graph, element) in NEVER_SILENT),
     )
 
 
-def remote_table(model: RemoteModel, graph: Graph, share: NDArray[np.floating], *, least: float = 0.1) -> pd.DataFrame:
+def remote_table(
+    model: RemoteModel,
+    graph: Graph,
+    share: NDArray[np.floating],
+    *,
+    silenced: Mapping[int, float] | None = None,
+    least: float = 0.1,
+) -> pd.DataFrame:
     """Regions that lost input, most first, with standard measures of the network before and after the damage.
 
     Parameters
     ----------
     share : (n_elements,) float
-        Point damage of the elements of ``model``.
+        Damage of the elements of ``model``: of one point, or the mean of an ensemble.
+    silenced : mapping, optional
+        Region number to the largest share of draws in which an account has it silenced, for every region that an
+        account names; all of these are listed. By default as :meth:`RemoteModel.silenced` reads ``share`` alone.
     least : float
-        Regions that lost a smaller share of their input are left out.
+        Other regions that lost a smaller share of their input are left out.
 
     Returns
     -------
@@ -158,13 +195,17 @@ def remote_table(model: RemoteModel, graph: Graph, share: NDArray[np.floating], 
         (weighted degree), ``communicability_kept`` (summed communicability with all regions, after over before;
         Estrada and Hatano 2008, on weights scaled by strength as in Crofts and Higham 2009), ``path_before``,
         ``path_after`` (mean shortest route to the regions that it reached before, length 1/weight; infinite where
-        one is cut off), ``named`` (whether it reaches the threshold), ``words``.
+        one is cut off), ``silenced_share`` (as in ``silenced``, else 0), ``named`` (whether it is in ``silenced``),
+        ``words``. Named regions come first.
     """
     damage = np.ascontiguousarray(share, np.float32)[:, None]
     losses = {region: float(value[0]) for region, value in model.input_loss(damage).items()}
-    listed = sorted((region for region, value in losses.items() if value >= least), key=lambda r: -losses[r])
+    silent = model.silenced_shares(damage) if silenced is None else silenced
+    listed = sorted({region for region, value in losses.items() if value >= least} | set(silent),
+                    key=lambda r: (r not in silent, -losses.get(r, 0.0), r))  # fmt: skip
     columns = ["element", "name", "own_damage", "lost_input", "strength_before", "strength_after",
-               "communicability_kept", "path_before", "path_after", "named", "words"]  # fmt: skip
+               "communicability_kept", "path_before", "path_after", "silenced_share", "named",
+               "words"]  # fmt: skip
     if not listed:
         return pd.DataFrame(columns=columns)
     before, after = _region_graph(model, None), _region_graph(model, damage[:, 0])
@@ -176,24 +217,45 @@ def remote_table(model: RemoteModel, graph: Graph, share: NDArray[np.floating], 
         still = nx.single_source_dijkstra_path_length(after, region, weight="length")
         others = [other for other in reached if other != region]
         strength = float(before.degree(region, weight="weight")), float(after.degree(region, weight="weight"))
-        named = losses[region] >= model.threshold and float(share[region]) < _OWN_DAMAGE
+        lost, part = losses.get(region, 0.0), silent.get(region, 0.0)
         rows.append([
-            element, graph.name_of(element), float(share[region]), losses[region], *strength,
+            element, graph.name_of(element), float(share[region]), lost, *strength,
             talk_after[region] / talk_before[region] if talk_before[region] > 0 else 1.0,
             float(np.mean([reached[o] for o in others])) if others else 0.0,
             float(np.mean([still.get(o, np.inf) for o in others])) if others else 0.0,
-            named, _sentence(model, graph, damage[:, 0], region, losses[region]),
+            part, region in silent, _sentence(model, graph, damage[:, 0], region, lost, part, "up to "),
         ])  # fmt: skip
     return pd.DataFrame(rows, columns=columns)
 
 
-def named_regions(model: RemoteModel, graph: Graph, share: NDArray[np.floating]) -> list[str]:
-    """Why each region that may be silenced is named, most lost input first; ``share`` as in :func:`remote_table`."""
-    damage = np.ascontiguousarray(share, np.float32)
-    losses = {region: float(value[0]) for region, value in model.input_loss(damage[:, None]).items()}
-    silent = [region for region, lost in losses.items() if lost >= model.threshold and damage[region] < _OWN_DAMAGE]
-    silent.sort(key=lambda region: -losses[region])
-    return [_sentence(model, graph, damage, region, losses[region]) for region in silent]
+def blamed_regions(model: RemoteModel, draws: NDArray[np.floating], elements: Sequence[str] = ()) -> dict[int, float]:
+    """Regions that an account with silenced regions names, each with the share of draws in which it is silenced.
+
+    Parameters
+    ----------
+    draws : (n_draws, n_elements) float
+        Damage of the elements of ``model`` before anything is silenced.
+    elements : sequence of str
+        Element ids that the account rests on: named however seldom they are silenced, and before all others.
+    """
+    shares = model.silenced_shares(np.ascontiguousarray(draws.T, np.float32))
+    rank = {element: i for i, element in enumerate(elements)}
+    ids = model.element_ids
+    kept = [region for region, part in shares.items() if part >= LEAST_SILENCED or ids[region] in rank]
+    kept.sort(key=lambda region: (rank.get(ids[region], len(rank)), -shares[region], region))
+    return {region: shares[region] for region in kept}
+
+
+def named_regions(
+    model: RemoteModel, graph: Graph, draws: NDArray[np.floating], elements: Sequence[str] = ()
+) -> list[str]:
+    """Why each region of :func:`blamed_regions` is named, in a sentence without its full stop."""
+    mean = np.ascontiguousarray(draws.mean(axis=0), np.float32)
+    losses = model.input_loss(mean[:, None])
+    return [
+        _sentence(model, graph, mean, region, float(losses[region][0]) if region in losses else 0.0, share, "")
+        for region, share in blamed_regions(model, draws, elements).items()
+    ]
 
 
 def segment_ends(graph: Graph) -> dict[str, tuple[str, str]]:
@@ -210,6 +272,12 @@ def segment_ends(graph: Graph) -> dict[str, tuple[str, str]]:
                     places.append(graph.resolve(place, "right" if own == "right" else "left"))
             ends[f"{key}@{side}"] = (places[0], places[1])
     return ends
+
+
+def _tissue(graph: Graph, element: str) -> str:
+    """What a region is made of; empty for a segment."""
+    region = graph.regions.get(element.partition("@")[0])
+    return "" if region is None else region.tissue
 
 
 def _weight(graph: Graph, element: str) -> float:
@@ -266,14 +334,16 @@ def _worst_input(model: RemoteModel, damage: NDArray[np.floating], region: int) 
 
 
 def _sentence(
-    model: RemoteModel, graph: Graph, damage: NDArray[np.floating], region: int, lost: float
+    model: RemoteModel, graph: Graph, damage: NDArray[np.floating], region: int, lost: float, silent: float, upto: str
 ) -> str:
-    """Why a region is named, or why not."""
+    """Why a region is named, or why not; ``silent`` is the share of draws in which it is silenced, 0 if not named."""
     own = float(damage[region])
     through = ", ".join(graph.name_of(model.element_ids[part]) for part in _worst_input(model, damage, region))
-    start = f"{graph.name_of(model.element_ids[region])} lost {lost:.0%} of its charted input through {through}"
+    start = f"{graph.name_of(model.element_ids[region])} lost {lost:.0%} of its charted input"
+    start += f" through {through}" if through else ""
+    if silent > 0.0:
+        itself = "untouched" if own < 0.02 else f"{'only ' if own < 0.35 else ''}{own:.0%} damaged"
+        return f"{start}; it is itself {itself} and may fall silent (in {upto}{silent:.0%} of the virtual anatomies)"
     if own >= _OWN_DAMAGE:
         return f"{start}; it is itself damaged"
-    if lost < model.threshold:
-        return f"{start}; too little to silence it"
-    return f"{start}; it is itself {'untouched' if own < 0.02 else f'only {own:.0%} damaged'} and may fall silent"
+    return f"{start}; too little to silence it"

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from toy_graph import toy_graph
 from toy_reckoning import absent, found, toy_explanation
 
-from byway.knowledge.reasoning.remote import named_regions, remote_model, remote_table, segment_ends
+from byway.knowledge.reasoning.remote import blamed_regions, named_regions, remote_model, remote_table, segment_ends
 
 GRAPH = toy_graph()
 IDS = GRAPH.all_element_ids
@@ -59,11 +61,10 @@ def test_a_deep_infarct_silences_intact_cortex() -> None:
     findings = [found("halting_speech"), absent("hand_weakness", "right"), absent("comprehension_loss")]
     priors = {"remote": 0.5}
     explanation = toy_explanation(damage, findings, priors=priors)
-    table = explanation.remote
-    assert table.iloc[0]["element"] == "visual@left"
-    assert bool(table.iloc[0]["named"])
-    assert "lost" in table.iloc[0]["words"]
-    assert "may fall silent" in table.iloc[0]["words"]
+    visual = explanation.remote.set_index("element").loc["visual@left"]
+    assert bool(visual["named"])
+    assert "lost" in visual["words"]
+    assert "may fall silent" in visual["words"]
 
 
 def test_standard_measures_fall_with_damage() -> None:
@@ -80,4 +81,31 @@ def test_no_damage_names_no_region() -> None:
     table = remote_table(MODEL, GRAPH, share())
     assert table.empty
     assert "words" in table.columns
-    assert named_regions(MODEL, GRAPH, share()) == []
+    assert named_regions(MODEL, GRAPH, share()[None]) == []
+
+
+def test_brainstem_and_white_matter_are_never_silenced() -> None:
+    """A region made of such tissue passes input on but is not silenced, not listed and not named."""
+    regions = {**GRAPH.regions, "visual": GRAPH.regions["visual"].model_copy(update={"tissue": "brainstem"})}
+    model = remote_model(replace(GRAPH, regions=regions), IDS)
+    damage = share(thalamus=1.0)
+    assert IDS.index("visual@left") in MODEL.silenced(damage[:, None])
+    assert IDS.index("visual@left") not in model.silenced(damage[:, None])
+    assert "visual@left" not in set(remote_table(model, GRAPH, damage)["element"])
+    assert model.connections == MODEL.connections
+
+
+def test_the_table_lists_what_accounts_blame() -> None:
+    """Every region that a card calls silenced, or that an account with silenced regions rests on, is in the table,
+    with the share of draws."""
+    findings = [found("halting_speech"), absent("hand_weakness", "right"), absent("comprehension_loss")]
+    explanation = toy_explanation({"thalamus@left": 0.6}, findings, priors={"remote": 0.5}, spread=0.2)
+    table = explanation.remote.set_index("element")
+    blaming = [each for each in explanation.accounts if each.scenario.remote == "yes"]
+    assert blaming
+    for each in blaming:
+        before = explanation.reckoning.damage_of(replace(each.scenario, remote="no"))
+        for region, part in blamed_regions(explanation.reckoning.prepared.remote, before, each.elements).items():
+            row = table.loc[explanation.reckoning.prepared.element_ids[region]]
+            assert bool(row["named"])
+            assert row["silenced_share"] >= part > 0.0
