@@ -97,8 +97,9 @@ def bench_notebook(folder: Path) -> Path:
     """The notebook of a case folder that shows the bench on it; made where there is none, else left as it is."""
     path = folder / "bench.ipynb"
     if not path.exists():
-        cell: dict[str, object] = {"cell_type": "code", "execution_count": None, "id": "bench", "metadata": {}, "outputs": [],
-                "source": 'from byway.widgets import bench\n\nbench(".")'}  # fmt: skip
+        source = 'from byway.widgets import bench\n\nbench(".")'
+        empty: dict[str, object] = {"execution_count": None, "id": "bench", "metadata": {}, "outputs": []}
+        cell = {"cell_type": "code", "source": source, **empty}
         kernel = {"name": "python3", "display_name": "Python 3", "language": "python"}
         book = {"cells": [cell], "metadata": {"kernelspec": kernel}, "nbformat": 4, "nbformat_minor": 5}
         write_text(path, json.dumps(book, indent=1) + "\n")
