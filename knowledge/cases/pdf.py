@@ -14,7 +14,16 @@ from reportlab.platypus import BaseDocTemplate, Flowable, Frame, KeepInFrame, Ke
 from byway.knowledge.atomic import write_bytes
 from byway.knowledge.cases.case import Case
 from byway.knowledge.cases.pdf_parts import NORMAL, QUIET, Ink, PosteriorBar, SliceFigure, TwinBar, grid
-from byway.knowledge.cases.report_facts import AccountFacts, ReportFacts, facts_of, odds, posterior, share, signed
+from byway.knowledge.cases.report_facts import (
+    AccountFacts,
+    ReportFacts,
+    clearance,
+    facts_of,
+    odds,
+    posterior,
+    share,
+    signed,
+)
 from byway.knowledge.reasoning.explain import Explanation
 from byway.knowledge.words import section, word
 
@@ -107,7 +116,7 @@ def _head(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
         ink.say(f.title, "title"), ink.rich([*invented, ("", line)], "quiet"),
         ink.say(f.explanation.caution, "caution"), ink.say(w["lesion"], "heading"), ink.say(measured),
         *(ink.say(note, "quiet") for note in lesion.notes), pictures,
-        ink.say(w["hatching"], "quiet"),
+        ink.say(f.legend, "quiet"),
     ]  # fmt: skip
 
 
@@ -116,8 +125,9 @@ def _hit(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
     head = [w["element"], w["side"], w["kind"], w["share"], "5–95 %", w["overlap"], w["clearance"], w["whose"]]
     rows = [ink.cells(head, numbers, head=True)]
     rows += [ink.cells([r["name"], r["side"], w["lost"] if r["kind"] == "region" else w["severed"], share(r["share"]),
-                        f"{share(r['low'])}–{share(r['high'])}", f"{r['overlap_ml']:.2f}", f"{r['clearance_mm']:.1f}",
-                        r["anatomy"]], numbers) for r in f.hit]  # fmt: skip
+                        f"{share(r['low'])}–{share(r['high'])}", f"{r['overlap_ml']:.2f}",
+                        " ".join(clearance(r["clearance_mm"])).rstrip(), r["anatomy"]], numbers)
+             for r in f.hit]  # fmt: skip
     widths = [WIDTH - 322, 38, 46, 36, 54, 42, 46, 60]
     return [ink.say(w["hit"], "heading"), ink.say(f"{w['anatomy']} {f.anatomy}. {w['interval']}", "quiet"),
             grid(rows, widths), *_anatomies(f, ink, w)]  # fmt: skip
@@ -160,6 +170,7 @@ def _remote(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
 
 def _accounts(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
     flow: list[Flowable] = [ink.say(w["accounts"], "heading")]
+    flow += [ink.rich([("b", w["no_findings"])])] if f.no_findings else []
     for card in f.accounts:
         head, more = _card(card, f.full, ink, w)
         flow += [*_together(head, f.full), *more, Spacer(0, 4)]
@@ -173,7 +184,8 @@ def _card(card: AccountFacts, full: bool, ink: Ink, w: dict[str, str]) -> tuple[
         PosteriorBar(it.posterior, WIDTH * 0.5),
         Spacer(0, 2),
         ink.rich([("", w["posterior"] + " "), ("b", posterior(it.posterior)),
-                  ("", f" ({it.words}) · {w['odds']} {odds(it.odds_vs_cortical)} · {it.kind.replace('_', ' ')}")]),
+                  ("", f" ({it.words}): {w['posterior_means']} · {w['odds']} {odds(it.odds_vs_cortical)} · "
+                       f"{it.kind.replace('_', ' ')}")]),
     ]  # fmt: skip
     for label, signs in ((w["explains"], it.explains), (w["leaves"], it.leaves),
                          (w["predicts_absent"], it.predicts_absent)):  # fmt: skip
@@ -186,7 +198,8 @@ def _card(card: AccountFacts, full: bool, ink: Ink, w: dict[str, str]) -> tuple[
     if not full:
         return head, []
     head += [ink.say(f"{b['words']} ({w['capacity']} {share(b['capacity'])})", "quiet") for b in card.bottlenecks]
-    more: list[Flowable] = [ink.say("; ".join(f"{name} ({share(part)})" for _, name, part in card.elements), "quiet")]
+    parts = "; ".join(f"{name} ({share(part)})" for _, name, part in card.elements)
+    more: list[Flowable] = [ink.say(f"{w['explained_by']} {parts}", "quiet")] if parts else []
     more += [ink.say(one.words, "quiet") for one in it.sparing]
     numbers = (3, 4, 5)
     rows = [ink.cells([w["ledger"], w["side"], w["found"], "P", w["loglik"], w["vs_cortical"]], numbers, head=True)]
@@ -199,6 +212,8 @@ def _card(card: AccountFacts, full: bool, ink: Ink, w: dict[str, str]) -> tuple[
     rows.append(ink.cells([w["sum"], "", "", "", signed(card.ledger_sum["loglik"]),
                            signed(card.ledger_sum["vs_cortical"])], numbers))  # fmt: skip
     more.append(grid(rows, [WIDTH - 290, 40, 50, 40, 70, 90], foot=1))
+    if card.rank == 0:
+        more += [ink.say(w["p_means"], "quiet"), ink.say(w["loglik_means"], "quiet")]
     for label, claims in ((w["claims_for"], card.claims_for), (w["claims_against"], card.claims_against)):
         if claims:
             more.append(ink.rich([("b", label)]))
@@ -220,7 +235,22 @@ def _team(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
 def _next(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
     rows = [ink.cells([w["sign"], w["side"], w["bits"], w["minutes"]], (2, 3), head=True)]
     rows += [ink.cells([r["name"], _side(r), f"{r['bits']:.3f}", f"{r['minutes']:g}"], (2, 3)) for r in f.next_tests]
-    return _together([ink.say(w["next"], "heading"), grid(rows, [WIDTH - 180, 60, 60, 60])], f.full)
+    tests = [ink.say(w["next"], "heading"), grid(rows, [WIDTH - 180, 60, 60, 60]), ink.say(w["bits_mean"], "quiet")]
+    return [*_together(tests, f.full), *_most_telling(f, ink, w)]
+
+
+def _most_telling(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
+    parts: list[Flowable] = []
+    if f.next_images:
+        rows = [ink.cells([w["scan_of"], "5–95 %", w["what_could"], w["bits"]], (1, 3), head=True)]
+        rows += [ink.cells([r["name"], f"{share(r['low'])}–{share(r['high'])}", r["image"], f"{r['bits']:.3f}"], (1, 3))
+                 for r in f.next_images]  # fmt: skip
+        parts.append(grid(rows, [WIDTH - 290, 60, 180, 50]))
+    if f.next_axes:
+        rows = [ink.cells([w["question"], w["what_could"], w["bits"]], (2,), head=True)]
+        rows += [ink.cells([r["question"], r["image"], f"{r['bits']:.3f}"], (2,)) for r in f.next_axes]
+        parts.append(grid(rows, [WIDTH - 330, 280, 50]))
+    return [KeepTogether([ink.say(w["most_telling"], "heading"), *parts])] if parts else []
 
 
 def _notes(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:

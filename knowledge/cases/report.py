@@ -12,7 +12,7 @@ from nh3 import clean
 
 from byway.knowledge.atomic import write_text
 from byway.knowledge.cases.case import Case
-from byway.knowledge.cases.report_facts import facts_of, odds, posterior, share, signed
+from byway.knowledge.cases.report_facts import clearance, facts_of, odds, posterior, share, signed
 from byway.knowledge.reasoning.explain import Explanation
 from byway.knowledge.words import section
 
@@ -52,7 +52,8 @@ def report_html(case: Case, explanation: Explanation, **choices: Any) -> str:
         loader=jinja2.FunctionLoader(lambda name: files("byway.knowledge.cases").joinpath(name).read_text("utf-8")),
         autoescape=True, undefined=jinja2.StrictUndefined, trim_blocks=True, lstrip_blocks=True,
     )  # fmt: skip
-    environment.filters.update(share=share, posterior=posterior, odds=odds, signed=signed, markdown=markdown_html)
+    environment.filters.update(share=share, posterior=posterior, odds=odds, signed=signed, clearance=clearance,
+                               markdown=markdown_html)  # fmt: skip
     return environment.get_template("report.html").render(w=section("report"), f=facts, spec=case.spec)
 
 

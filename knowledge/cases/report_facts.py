@@ -25,8 +25,10 @@ from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.reasoning.accounts import Account
 from byway.knowledge.reasoning.explain import Explanation
 from byway.knowledge.space.template import template_volume
+from byway.knowledge.words import word
 
-__all__ = ["AccountFacts", "ReportFacts", "Row", "facts_of", "odds", "posterior", "share", "signed", "versions"]
+__all__ = ["AccountFacts", "ReportFacts", "Row", "clearance", "facts_of", "odds", "posterior", "share", "signed",
+           "versions"]  # fmt: skip
 
 Row = dict[str, Any]
 
@@ -64,12 +66,15 @@ class ReportFacts:
     full: bool
     title: str
     views: list[SliceView]
+    legend: str
     hit: list[Row]
     profile: list[Row]
     accounts: list[AccountFacts]
     rest_posterior: float
     next_tests: list[Row]
     next_images: list[Row]
+    next_axes: list[Row]
+    no_findings: bool
     sources: list[Source]
     notes: list[tuple[int, Note, bool]]
     standing: list[Row]
@@ -124,12 +129,16 @@ def facts_of(
         full=full,
         title=case.spec.title or case.folder.name,
         views=slice_views(template_volume("t1"), lesion, extra=2 if full else 0),
+        legend=_legend(lesion),
         hit=rows_of(explanation.damage[explanation.damage["share"] >= LEAST_SHARE].head(SHOWN_HITS[full])),
         profile=rows_of(_profile(explanation).head(SHOWN_PROFILE[full])),
         accounts=accounts,
         rest_posterior=max(0.0, 1.0 - sum(card.it.posterior for card in accounts)),
         next_tests=rows_of(explanation.next_tests.head(SHOWN_TESTS[full])),
         next_images=rows_of(explanation.next_images.head(6)) if full else [],
+        next_axes=[{**row, "question": word(f"accounts.axis_{row['axis']}")} for row in rows_of(explanation.next_axes)]
+        if full else [],
+        no_findings=not explanation.reckoning.findings,
         sources=_sources(graph, accounts),
         notes=[(depth, note, settled.get(origins.get(note.id, note.id), False))
                for depth, note in thread(notes, origins)],
@@ -159,6 +168,14 @@ def versions() -> dict[str, str]:
 def rows_of(table: pd.DataFrame) -> list[Row]:
     """A table's rows as plain mappings."""
     return [{str(key): value for key, value in row.items()} for row in table.to_dict("records")]
+
+
+def _legend(lesion: Lesion) -> str:
+    """What the patterns on the slices stand for: those that are there, and how the slices are turned."""
+    drawn = {compartment.kind for compartment in lesion.compartments if compartment.mask.any()}
+    names = [kind for kind in ("core", "oedema", "other") if kind in drawn]
+    names += ["graded"] if lesion.effect_volume is not None else []
+    return " ".join([word("report.display"), *(word(f"report.legend_{name}") for name in names)])
 
 
 def _profile(explanation: Explanation) -> pd.DataFrame:
@@ -194,6 +211,17 @@ def _sources(graph: Graph, accounts: Iterable[AccountFacts]) -> list[Source]:
 def share(value: float | None) -> str:
     """A share or probability with two decimals; a dash where it is not known."""
     return "–" if value is None or not np.isfinite(value) else f"{value:.2f}"
+
+
+def clearance(value: float) -> tuple[str, str]:
+    """A clearance in mm without its sign, and the word for one that lies inside the lesion.
+
+    >>> clearance(-6.63), clearance(3.2), clearance(float("nan"))
+    (('6.6', 'inside'), ('3.2', ''), ('–', ''))
+    """
+    if not np.isfinite(value):
+        return "–", ""
+    return f"{abs(value):.1f}", word("report.inside") if value < 0 else ""
 
 
 def posterior(value: float) -> str:

@@ -6,6 +6,7 @@ import html.parser
 import io
 import re
 import shutil
+from html import unescape
 from pathlib import Path
 
 import pandas as pd
@@ -18,8 +19,10 @@ from byway.knowledge.cases.case import Case
 from byway.knowledge.cases.pages import Note, OwnAccount, Pages, Standing
 from byway.knowledge.cases.pdf import report_pdf
 from byway.knowledge.cases.report import MARKDOWN_TAGS, markdown_html, report_html
-from byway.knowledge.cases.report_facts import facts_of, odds, posterior, share, signed
+from byway.knowledge.cases.report_facts import clearance, facts_of, odds, posterior, share, signed
 from byway.knowledge.cases.tables import case_tables, safe_cells, write_tables
+from byway.knowledge.cases.wording import explanation_text
+from byway.knowledge.words import section
 from byway.widgets import number_named
 
 CASES = Path(__file__).parents[2] / "notebooks" / "cases"
@@ -88,6 +91,8 @@ def test_every_number_is_that_of_the_api(nodes: Nodes, case: Case, explanation: 
         wanted = api(name, case, explanation, printed)
         assert float(value or "nan") == pytest.approx(wanted, rel=1e-9, abs=1e-12, nan_ok=True), name
         shown = float(text) if text not in ("–", "") else wanted
+        if name.endswith("clearance_mm"):  # depth inside the lesion is told by a word, as on the bench
+            wanted, shown = abs(wanted), abs(shown)
         half = 10.0 ** -len(text.partition("e")[0].partition(".")[2]) / 2
         slack = abs(wanted) * 0.06 if name.endswith("odds_vs_cortical") else half * 1.001
         assert shown == pytest.approx(wanted, abs=slack), name
@@ -135,7 +140,7 @@ def test_the_pdf_has_the_same_numbers(case: Case, explanation: Explanation) -> N
     facts = facts_of(case, explanation)
     for row in facts.hit:
         numbers = (f"{share(row['share'])} {share(row['low'])}–{share(row['high'])} {row['overlap_ml']:.2f} "
-                   f"{row['clearance_mm']:.1f}")  # fmt: skip
+                   f"{' '.join(clearance(row['clearance_mm'])).strip()}")  # fmt: skip
         assert numbers in text, row["name"]
     for row in facts.profile:
         assert f"{share(row['expected'])} {share(row['expected_cortical'])}" in text, row["name"]
@@ -147,8 +152,42 @@ def test_the_pdf_has_the_same_numbers(case: Case, explanation: Explanation) -> N
         assert f"Sum {signed(card.ledger_sum['loglik'])} {signed(card.ledger_sum['vs_cortical'])}" in text
     for row in facts.next_tests:
         assert f"{row['bits']:.3f} {row['minutes']:g}" in text
+    for row in facts.next_images:
+        assert f"{share(row['low'])}–{share(row['high'])} {row['image']} {row['bits']:.3f}" in text
+    for row in facts.next_axes:
+        assert f"{row['question']} {row['image']} {row['bits']:.3f}" in text
     assert all("no diagnosis" in page for page in pages)
     assert f"Page {len(pages)} of {len(pages)}" in pages[-1]
+
+
+def test_a_reader_is_told_what_the_numbers_mean(case: Case, explanation: Explanation) -> None:
+    """HTML and PDF say which way the slices face, what P, log-likelihood, bits and posterior are, what the elements'
+    shares are of, and where the rest went; depth inside the lesion is a word; only compartments that are there
+    are in the key."""
+    page = unescape(report_html(case, explanation))
+    text = " ".join(pdf_text(report_pdf(case, explanation)))
+    said = section("report")
+    for key in ("display", "posterior_means", "explained_by", "p_means", "loglik_means", "bits_mean", "others",
+                "most_telling"):  # fmt: skip
+        assert said[key] in page, key
+        assert said[key] in text, key
+    for one in (page, text):
+        assert re.search(r"\d(</span>)? inside", one)
+        assert said["no_findings"] not in one
+    kinds = {compartment.kind for compartment in case.lesion.compartments}
+    for kind in ("core", "oedema", "other"):
+        assert (said[f"legend_{kind}"] in page) == (said[f"legend_{kind}"] in text) == (kind in kinds)
+
+
+def test_a_case_without_findings_says_so(case: Case) -> None:
+    """Where nothing was found or looked for, HTML, PDF and text say that the lesion alone speaks."""
+    bare = case.with_spec(findings=())
+    told = explain(bare, draws=10)
+    notice = section("report")["no_findings"]
+    assert notice in report_html(bare, told)
+    assert notice in " ".join(pdf_text(report_pdf(bare, told)))
+    assert notice in " ".join(pdf_text(report_pdf(bare, told, full=False)))
+    assert notice in explanation_text(bare, told)
 
 
 def test_the_summary_is_one_page(case: Case, explanation: Explanation) -> None:
