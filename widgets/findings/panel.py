@@ -8,6 +8,7 @@ import traitlets as t
 
 from byway.knowledge.faults import BywayError, Fault
 from byway.knowledge.reasoning.findings import BodySide, Finding, FoundGrade
+from byway.widgets.findings.everyday import EVERYDAY
 from byway.widgets.findings.wire import expected_of, findings_of, signs_of
 from byway.widgets.front import load_css, load_esm
 from byway.widgets.panel import Panel
@@ -30,11 +31,12 @@ class FindingsPanel(Panel):
     sections: ClassVar[tuple[str, ...]] = ("findings",)
 
     signs: Any = t.List().tag(sync=True)
+    everyday = t.Dict().tag(sync=True)
     findings = t.Dict().tag(sync=True)
     expected = t.Dict().tag(sync=True)
 
     def __init__(self, source: Any) -> None:
-        super().__init__(source)
+        super().__init__(source, everyday={word: list(terms) for word, terms in EVERYDAY.items()})
         self.show_signs()
         self.when(["case_seq", "graph_seq"], self.show_signs)
         self.when(["findings_seq"], self.show_findings)

@@ -1,6 +1,6 @@
 // Findings: every sign with what was seen of it. Not tested, absent and present stay three different things.
 import { fill, frame, freshId, h, keep, mark, number, percent, say, segmented, setNumber, watch } from "../front/kit.js";
-import { grouped, matches } from "./search.js";
+import { found, grouped } from "./search.js";
 
 const GRADES = ["not_tested", "absent", "mild", "moderate", "severe"];
 
@@ -100,7 +100,7 @@ function render({ model, el }) {
     draw();
   });
   const search = h("input", { class: "bw-search", type: "search", placeholder: words.search, "aria-label": words.search,
-    oninput: () => { view.text = search.value; draw(); } });
+    oninput: () => { view.text = search.value.trim(); draw(); } });
   const { panel, body, foot } = frame(el, words, "findings", choose, search);
   const groups = h("div", { class: "bw-find-groups" });
   const empty = h("p", { class: "bw-empty" });
@@ -122,8 +122,8 @@ function render({ model, el }) {
     const findings = now && !now.type ? now : model.get("findings");
     const recorded = view.show === "recorded" && !view.text;
     for (const id of Object.keys(findings)) kept.add(id);
-    const signs = model.get("signs").filter((sign) => (view.text ? matches(sign, view.text)
-      : !recorded || sign.sides.some((side) => kept.has(`${sign.key}@${side}`))));
+    const signs = view.text ? found(model.get("signs"), view.text, model.get("everyday"), words)
+      : model.get("signs").filter((sign) => !recorded || sign.sides.some((side) => kept.has(`${sign.key}@${side}`)));
     const expected = model.get("expected");
     const shown = recorded ? Object.fromEntries([...kept].map((id) => [id, findings[id] || {}])) : findings;
     keep(groups, grouped(signs, words), (group) => group.domain, makeGroup, (node, group) => {
