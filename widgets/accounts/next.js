@@ -1,5 +1,5 @@
 // What to do next: tests and images that would tell the accounts apart, in bits, with their burden.
-import { fixed, h, number, percent } from "../front/kit.js";
+import { fill, fixed, h, number, percent } from "../front/kit.js";
 import { chip, signName } from "./parts.js";
 
 function bitsBar(bits, most) {
@@ -19,8 +19,8 @@ function leaderWords(row, outcome, kinds, words) {
   const chance = number(`next_tests/${row.sign}@${row.side}/p_if_${outcome}`, row[`p_if_${outcome}`], percent(row[`p_if_${outcome}`]));
   const title = row[`if_${outcome}`];
   if (rank === null) return h("span", {}, title, ", ", chance);
-  const told = rank === 0 ? words.still_leads : words[`account_${kinds[rank]}`] || title;
-  return h("span", { title }, h("span", { class: "bw-rank-tag" }, rank + 1), ` ${told}, `, chance);
+  const told = fill(rank === 0 ? words.still_leads : words.now_leads, { number: rank + 1, title: words[`account_${kinds[rank]}`] || title });
+  return h("span", { title }, told, " ", chance);
 }
 
 /** Untested signs, most telling first. */

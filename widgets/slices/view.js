@@ -43,7 +43,9 @@ class View extends WithActions {
     const { words } = this;
     this.films = PLANES.map((plane) => new Film(plane, this));
     this.projection = new Projection(this);
-    this.display = h("button", { type: "button", class: "bs-button", onclick: () => this.setRadiological(!this.radiological) });
+    this.displayWord = h("span", {});
+    this.display = h("button", { type: "button", class: "bs-button", onclick: () => this.setRadiological(!this.radiological) },
+      h("span", { class: "bs-wide" }, words.display, " "), this.displayWord);
     this.buttons = [commandButton(this, "undo", icon("undo")), commandButton(this, "redo", icon("redo"))];
     const helpButton = commandButton(this, "help", icon("help"));
     const { panel, body, foot } = frame(el, words, "slices", ...this.buttons, this.display,
@@ -121,8 +123,8 @@ class View extends WithActions {
   refit() {
     for (const film of this.films) film.resize();
     this.projection.later();
-    say(this.display, this.words[this.radiological ? "radiological_on" : "neurological_on"]);
-    mark(this.display, "title", this.words.radiological);
+    say(this.displayWord, this.words[this.radiological ? "radiological_on" : "neurological_on"]);
+    mark(this.display, "title", this.words[this.radiological ? "to_neurological" : "to_radiological"]);
   }
 
   lookChanged(keys) {
