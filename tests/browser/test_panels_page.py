@@ -38,7 +38,7 @@ NAMELESS = """() => [...document.querySelectorAll('button, input, select, [role=
   return !label || !label.trim(); }).map((e) => e.outerHTML)"""
 LOOSE = r"""() => {
   const told = '[data-name], option, output, .bw-cautions, .bw-necks, .bw-plain-list, .bw-prof-key, thead,'
-    + '.bw-route-facts';
+    + '.bw-route-facts, .bw-remarks';
   const out = [];
   const walk = document.createTreeWalker(document.querySelector('.bw-body'), NodeFilter.SHOW_TEXT);
   while (walk.nextNode()) {

@@ -32,6 +32,8 @@ function render({ model, el }) {
     draw();
   });
   const { panel, body, foot } = frame(el, words, "accounts", busy, views);
+  const unfound = h("p", { class: "bw-remark" }, words.no_findings);
+  const remarks = h("div", { class: "bw-remarks", role: "note", "aria-label": words.remarks });
   const strip = h("div", { class: "bw-strip", role: "group", "aria-label": words.strip_label });
   const cards = h("div", { class: "bw-cards" });
   const others = h("p", { class: "bw-soft bw-others" });
@@ -43,7 +45,7 @@ function render({ model, el }) {
   const ranking = h("div", {}, cards, others, more);
   const ahead = h("div", {}, tests, images, axes);
   const comparison = makeComparison(words);
-  body.append(h("p", { class: "bw-lead bw-soft" }, words.lead), strip, ranking, ahead, comparison.node, empty);
+  body.append(h("p", { class: "bw-lead bw-soft" }, words.lead), unfound, remarks, strip, ranking, ahead, comparison.node, empty);
   const uncharted = number();
   foot.append(h("p", {}, uncharted, " ", words.uncharted), h("p", {}, words.anatomy_note));
   let all = false;
@@ -76,6 +78,9 @@ function render({ model, el }) {
       cards.firstChild.open(true);
       first = false;
     }
+    unfound.hidden = !told.unfound || !accounts.length;
+    redo(remarks, told.remarks || [], (lines) => lines.map((line) => h("p", { class: "bw-remark" }, line)));
+    remarks.hidden = !remarks.firstChild;
     strip.hidden = accounts.length < 2;
     strip.style.paddingRight = `${Math.min(40, Math.max(0, (told.other_posterior || 0) * 100))}%`;
     redo(others, [told.other_posterior, accounts.length], ([left]) => (left > 0.0005

@@ -31,6 +31,8 @@ def told_of(explanation: Any, graph: Any) -> dict[str, Any]:
     accounts = [_account(account, i, graph) for i, account in enumerate(explanation.accounts)]
     return {
         "accounts": plain(accounts),
+        "unfound": not any(row["row"] == "finding" for a in accounts[:1] for row in a["ledger"]),
+        "remarks": [str(line) for line in getattr(explanation, "remarks", ())],
         "other_posterior": plain(explanation.other_posterior),
         "next_tests": plain(_next_tests(explanation)),
         "next_images": plain(_next_images(explanation.next_images, graph)),
