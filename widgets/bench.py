@@ -48,6 +48,10 @@ DECK = {
 """Panels below the main four, made when first asked for: some load a drawing library that takes a second."""
 
 
+AGE_BANDS = ["unknown", *(f"{decade}-{decade + 9}" for decade in range(0, 90, 10)), "90+"]
+MOST_TITLE = 200
+
+
 class BenchHead(Panel):
     """The strip above the panels: title, person, stage, cause, caution, and the state's last remark."""
 
@@ -62,6 +66,7 @@ class BenchHead(Panel):
     def __init__(self, source: Any) -> None:
         super().__init__(source)
         self.options = {
+            "age_band": AGE_BANDS,
             "handedness": list(get_args(PersonSpec.model_fields["handedness"].annotation)),
             "stage": list(get_args(CaseFile.model_fields["stage"].annotation)),
             "cause": list(get_args(CaseFile.model_fields["cause"].annotation)),
@@ -97,10 +102,14 @@ class BenchHead(Panel):
             self.save()
         elif content.get("kind") == "case":
             name, value = content["name"], content["value"]
-            if name not in self.options or value not in self.options[name]:
+            if name == "title":
+                change: dict[str, Any] = {"title": str(value).strip()[:MOST_TITLE] or None}
+            elif name not in self.options or value not in self.options[name]:
                 raise BywayError(Fault("case", str(name), repr(value), "one of the values offered"))
-            person = {**case.spec.person.model_dump(), name: value}
-            change = {"person": person} if name == "handedness" else {name: value}
+            elif name in PersonSpec.model_fields:
+                change = {"person": {**case.spec.person.model_dump(), name: value}}
+            else:
+                change = {name: value}
             self.state.set_case(case.with_spec(**change))
 
     def save(self) -> None:

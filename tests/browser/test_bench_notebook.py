@@ -12,6 +12,9 @@ import nbformat
 import pytest
 from browser.notebook_page import open_and_run
 from browser.notebook_server import NotebookServer
+from browser.test_bench_page import REACHED
+
+from byway.widgets.bench import DECK
 
 SHARES = """() => [...document.querySelectorAll('.bw-hits-row')].map((row) =>
   [row.dataset.element, row.querySelector('.bw-hits-share [data-value]').dataset.value])"""
@@ -152,4 +155,8 @@ def test_further_views_open(page: Any, notebook_server: Callable[[str], Notebook
         page.wait_for_selector(what, timeout=60_000)
     page.wait_for_timeout(2500)
     page.locator(".byway-head-box").screenshot(path=artefacts / "head.png")
+    page.set_viewport_size({"width": 1200, "height": 1000})
+    page.locator(".byway-tabs").scroll_into_view_if_needed()
+    page.wait_for_timeout(300)
+    assert page.evaluate(REACHED) == list(DECK)
     assert page.strays == []
