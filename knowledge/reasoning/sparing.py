@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
+from byway.knowledge.graph.graph import Graph
 from byway.knowledge.reasoning.findings import Finding
 from byway.knowledge.reasoning.posterior import Reckoning
-from byway.knowledge.reasoning.rerouting import route_flows
+from byway.knowledge.reasoning.rerouting import RouteFlow, route_flows
 from byway.knowledge.reasoning.scenarios import Scenario, setting_of
 from byway.knowledge.reasoning.signs import LossCache, SignModel
-from byway.knowledge.reasoning.wording import join, list_names, route_name
+from byway.knowledge.reasoning.wording import in_a_sentence, join, list_names, route_name
 
 __all__ = ["Sparing", "explain_sparing"]
 
@@ -20,7 +22,8 @@ Array = NDArray[np.float32]
 
 _HIT = 0.25  # mean damage from which a sign's absence asks for a reason
 _KEEPS = 0.05  # share of a function that counts as kept by a route or by headroom
-
+_CLEAR = 0.03  # change of the share of a function that a route carries from which it is told
+_MOST = 3  # routes that are named before the others are counted
 
 FEARED = 0.5
 """P(sign), were all that is hit lost altogether, from which its absence asks for a reason."""
@@ -56,7 +59,7 @@ def explain_sparing(reckoning: Reckoning, scenario: Scenario) -> tuple[Sparing, 
         if reasons:
             name = reckoning.prepared.graph.signs[finding.sign].name
             side = "" if finding.side == "none" else f" ({finding.side})"
-            words = f"{name}{side} is absent although it might be feared: {join(list(reasons.values()))}"
+            words = f"{name}{side} is absent although it might be feared: {'; '.join(reasons.values())}"
             found.append(Sparing(finding.sign, finding.side, tuple(reasons), words))
     return tuple(found)
 
@@ -72,8 +75,9 @@ def _reasons(reckoning: Reckoning, scenario: Scenario, finding: Finding) -> dict
         return {}
     here = reckoning.damage_of(scenario)
     reasons: dict[str, str] = {}
+    moved: dict[str, tuple[RouteFlow, ...]] = {}
     for copy in dict.fromkeys((*model.copies, *usual.copies)):
-        name = graph.functions[copy.partition("@")[0]].name.lower()
+        name = in_a_sentence(graph.functions[copy.partition("@")[0]].name)
         typical = reckoning.prepared.tables["left", "usual"].get(copy)
         hit = typical is not None and as_drawn[typical.rows].max(initial=0.0) >= _HIT
         if hit and scenario.dominance == "right" and "dominant" in copy.partition("@")[2]:
@@ -92,8 +96,7 @@ def _reasons(reckoning: Reckoning, scenario: Scenario, finding: Finding) -> dict
         kept = [flow for flow in flows if flow.now >= _KEEPS and not any(
             mean[network.elements.index(e)] >= _HIT for e in flow.elements)]  # fmt: skip
         if kept and len(flows) > 1:
-            clauses = [flow.words(route_name(graph, network.function, flow.key)) for flow in kept]
-            reasons["spared_route"] = f"of {name}, {join(clauses)}"
+            moved[network.function] = flows
         elif mean[worst] < 0.8:
             part = list_names(graph, [network.elements[worst]])
             reasons["partial_severing"] = f"{part} is only {mean[worst]:.0%} out of action"
@@ -104,9 +107,49 @@ def _reasons(reckoning: Reckoning, scenario: Scenario, finding: Finding) -> dict
         spared = float((own[:, worst] < _HIT).mean())
         if 0.1 <= spared < 0.9:
             reasons["spared_anatomy"] = f"in {spared:.0%} of the virtual anatomies that part is spared"
+    if moved:
+        reasons = {"spared_route": _functions_in_words(graph, moved), **reasons}
     if model.sensitivity < 0.8:
         reasons["test_misses"] = f"the bedside test misses {1 - model.sensitivity:.0%} of people who have the sign"
     return reasons
+
+
+def _functions_in_words(graph: Graph, moved: Mapping[str, Sequence[RouteFlow]]) -> str:
+    """The function that lost most in full, the others by name."""
+    def lost(function: str) -> float:
+        return sum(max(0.0, flow.usual - flow.now) for flow in moved[function])
+
+    first, *others = sorted(moved, key=lambda function: -lost(function))
+    words = _routes_in_words(graph, first, moved[first])
+    if not others:
+        return words
+    names = join([in_a_sentence(graph.functions[function].name) for function in others])
+    return f"{words}; spared routes also carry {names}"
+
+
+def _routes_in_words(graph: Graph, function: str, flows: Sequence[RouteFlow]) -> str:
+    """What a function with a spared route lost, which routes take over, and that the others work as usual."""
+    def told(moved: list[RouteFlow]) -> str:
+        moved.sort(key=lambda flow: -abs(flow.now - flow.usual))
+        parts = [f"{route_name(graph, function, flow.key) or 'a detour'} ({_number(flow.now)} instead of "
+                 f"{_number(flow.usual)})" for flow in moved[:_MOST]]  # fmt: skip
+        more = len(moved) - _MOST
+        return join(parts + ([f"{more} more"] if more > 0 else []))
+
+    lost = told([flow for flow in flows if flow.usual - flow.now >= _CLEAR])
+    taken = told([flow for flow in flows if flow.now - flow.usual >= _CLEAR])
+    same = sum(abs(flow.now - flow.usual) < _CLEAR for flow in flows if flow.key != "recombined")
+    name = in_a_sentence(graph.functions[function].name)
+    if not lost:
+        return f"{name} is carried by its routes about as usual"
+    words = f"{name} is carried clearly less by {lost}"
+    words += f"; takes over: {taken}" if taken else ""
+    others = "the other route carries" if same == 1 else "the other routes carry"
+    return f"{words}; {others} as much as usual" if same else words
+
+
+def _number(share: float) -> str:
+    return f"{share:.2f}" if share >= 0.005 else "nothing"
 
 
 def _feared(reckoning: Reckoning, model: SignModel, damage: Array) -> float:
