@@ -21,7 +21,7 @@ from byway.knowledge.reasoning.scenarios import Scenario, setting_of
 from byway.knowledge.reasoning.sparing import Sparing, explain_sparing
 from byway.knowledge.reasoning.wording import DEPARTURE_WORDS, in_words, join, list_names, route_name
 
-__all__ = ["LIKELY", "Account", "FoundSign", "build_account", "title_of"]
+__all__ = ["LIKELY", "Account", "FoundSign", "build_account", "title_elements", "title_of"]
 
 LIKELY = 0.5
 """P(sign) from which an account is said to explain a finding, or to predict a sign that was not found."""
@@ -89,6 +89,9 @@ class Account:
         Source keys of those claims.
     cautions : tuple of str
         Sentences to read before using it.
+    differs : str
+        How it differs from an earlier account that names the same elements; empty where none does. Also the first of
+        ``cautions``.
     """
 
     key: str
@@ -115,13 +118,14 @@ class Account:
     claims_against: tuple[Claim, ...]
     sources: tuple[str, ...]
     cautions: tuple[str, ...]
+    differs: str = ""
 
     def to_dict(self) -> dict[str, Any]:
         """Plain values, by the same names."""
         plain: dict[str, Any] = {
             name: getattr(self, name)
             for name in ("key", "title", "kind", "merged", "prior", "posterior", "words", "odds_vs_cortical",
-                         "is_plain")
+                         "is_plain", "differs")
         }  # fmt: skip
         plain["scenario"] = vars(self.scenario).copy()
         for name in ("departures", "elements", "shares", "sources", "cautions"):
@@ -191,9 +195,8 @@ def build_account(reckoning: Reckoning, grouping: Grouping, books: Ledgers, inde
 
 def title_of(graph: Graph, scenario: Scenario, kind: AccountKind, elements: list[str] | tuple[str, ...]) -> str:
     """One line: what is damaged, and how the account departs from as drawn, typical organisation."""
-    regions = [element for element in elements if split_reference(element)[0] in graph.regions]
-    segments = [element for element in elements if element not in regions]
-    grey, cut = list_names(graph, regions[:2]), list_names(graph, segments[:2])
+    regions, segments = _most_telling(graph, elements)
+    grey, cut = list_names(graph, regions), list_names(graph, segments)
     parts = [f"damage of {grey}" if grey else "", f"disconnection through {cut}" if cut else ""]
     if kind == "cortical_damage":
         parts = parts[:1]
@@ -203,6 +206,20 @@ def title_of(graph: Graph, scenario: Scenario, kind: AccountKind, elements: list
     departures = [DEPARTURE_WORDS[each] for each in scenario.departures]
     said = f"{join(departures)}{': ' if elements else ''}{lead if elements else ''}" if departures else lead
     return f"{said[0].upper()}{said[1:]}"
+
+
+def title_elements(graph: Graph, account: Account) -> tuple[str, ...]:
+    """Element ids from which the title of an account is made."""
+    weighty = [element for element, share in zip(account.elements, account.shares, strict=True) if share >= _WEIGHTY]
+    regions, segments = _most_telling(graph, weighty)
+    return (*regions, *segments)
+
+
+def _most_telling(graph: Graph, elements: list[str] | tuple[str, ...]) -> tuple[list[str], list[str]]:
+    """The first two regions and the first two segments."""
+    regions = [element for element in elements if split_reference(element)[0] in graph.regions]
+    segments = [element for element in elements if element not in regions]
+    return regions[:2], segments[:2]
 
 
 def _necks(

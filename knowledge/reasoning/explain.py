@@ -19,6 +19,7 @@ from byway.knowledge.reasoning.ledger import ledgers
 from byway.knowledge.reasoning.next_tests import next_axes, next_images, outlook
 from byway.knowledge.reasoning.posterior import SCENARIOS, Reckoning, reckon
 from byway.knowledge.reasoning.prepared import prepare
+from byway.knowledge.reasoning.remarks import few_bits, own_side, tell_apart
 from byway.knowledge.reasoning.remote import blamed_regions, remote_table
 from byway.knowledge.reasoning.scenarios import Priors, axis_priors, headroom_of
 from byway.knowledge.reasoning.tables import function_table, sign_table
@@ -113,23 +114,27 @@ def explain_findings(
     shown = list(range(min(most_accounts, len(grouping.groups))))
     if grouping.plain not in shown:
         shown[-1] = grouping.plain
-    accounts = tuple(build_account(reckoning, grouping, books, index) for index in shown)
+    alarm = own_side(reckoning)
+    built = tell_apart(graph, [build_account(reckoning, grouping, books, index) for index in shown])
+    accounts = tuple(replace(account, cautions=(*alarm, *account.cautions)) for account in built)
     titles = {account.scenario: account.title for account in accounts}
     ahead = outlook(reckoning, grouping)
     every_title = [titles.get(group.scenario) or title_of(graph, group.scenario, kind_of(reckoning, group), ())
                    for group in grouping.groups]  # fmt: skip
+    tests = ahead.table(reckoning, every_title)
     return Explanation(
         damage=_damage_table(reckoning, damage) if damage_table is None else damage_table,
         functions=function_table(reckoning),
         signs=sign_table(reckoning),
         accounts=accounts,
         other_posterior=max(0.0, float(1.0 - sum(account.posterior for account in accounts))),
-        next_tests=ahead.table(reckoning, every_title),
+        next_tests=tests,
         next_images=next_images(reckoning, grouping),
         next_axes=next_axes(reckoning, grouping),
         remote=_remote_table(reckoning, accounts),
         uncharted_share=uncharted_share,
         caution=CAUTION,
+        remarks=(*alarm, *few_bits(tests)),
         situation=Situation(person.handedness, stage, cause, priors),
         reckoning=reckoning,
         grouping=grouping,

@@ -57,6 +57,8 @@ class Explanation:
         Share of the lesion's white matter that lies in no segment of the graph; NaN where not reckoned.
     caution : str
         One line that goes with every display.
+    remarks : tuple of str
+        Sentences about this case as a whole: signs on the lesion's own side, tests that would tell little.
     situation : Situation
         Handedness, stage, cause and the case's own priors.
     reckoning, grouping, outlook
@@ -74,6 +76,7 @@ class Explanation:
     remote: pd.DataFrame
     uncharted_share: float
     caution: str
+    remarks: tuple[str, ...]
     situation: Situation
     reckoning: Reckoning = field(repr=False)
     grouping: Grouping = field(repr=False)
@@ -108,6 +111,7 @@ class Explanation:
         """Everything as JSON, by the same names; NaN becomes null."""
         plain = {
             "caution": self.caution,
+            "remarks": list(self.remarks),
             "accounts": [account.to_dict() for account in self.accounts],
             "other_posterior": self.other_posterior,
             "uncharted_share": self.uncharted_share,

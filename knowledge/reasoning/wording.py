@@ -6,10 +6,11 @@ from collections.abc import Sequence
 
 from byway.knowledge.graph.graph import Graph
 from byway.knowledge.graph.references import split_reference
+from byway.knowledge.reasoning.scenarios import AXES, Scenario
 
 __all__ = [
-    "CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "in_a_sentence", "in_words", "join", "list_names", "route_name",
-    "share_words",
+    "CAUTION", "DEPARTURE_WORDS", "VERBAL_SCALE", "departure_words", "in_a_sentence", "in_words", "join", "list_names",
+    "route_name", "share_words",
 ]  # fmt: skip
 
 CAUTION = (
@@ -38,6 +39,28 @@ DEPARTURE_WORDS: dict[tuple[str, str], str] = {
     ("boundary", "too_small"): "the true lesion is larger than drawn",
     ("boundary", "too_large"): "the true lesion is smaller than drawn",
 }
+
+_USUAL_WORDS = {
+    "dominance": "language is led by the left hemisphere",
+    "reliance": "the person leans on the usual routes",
+    "outside": "no cause outside the lesion is supposed",
+    "speaks": "all of the damage shows",
+    "perilesional": "tissue around the lesion works",
+    "remote": "no region is silenced from afar",
+    "boundary": "the lesion is as large as drawn",
+}
+
+
+def departure_words(reference: Scenario, scenario: Scenario) -> list[str]:
+    """What one scenario supposes otherwise than another, a clause for each axis.
+
+    >>> departure_words(Scenario(remote="yes"), Scenario(reliance="second"))
+    ['the person leans on the second route', 'no region is silenced from afar']
+    """
+    return [
+        DEPARTURE_WORDS.get((axis, getattr(scenario, axis)), _USUAL_WORDS[axis])
+        for axis in AXES if getattr(scenario, axis) != getattr(reference, axis)
+    ]  # fmt: skip
 
 
 def in_words(probability: float) -> str:
