@@ -173,7 +173,7 @@ def rows_of(table: pd.DataFrame) -> list[Row]:
 def _legend(lesion: Lesion) -> str:
     """What the patterns on the slices stand for: those that are there, and how the slices are turned."""
     drawn = {compartment.kind for compartment in lesion.compartments if compartment.mask.any()}
-    names = [kind for kind in ("core", "oedema", "other") if kind in drawn]
+    names: list[str] = [kind for kind in ("core", "oedema", "other") if kind in drawn]
     names += ["graded"] if lesion.effect_volume is not None else []
     return " ".join([word("report.display"), *(word(f"report.legend_{name}") for name in names)])
 
