@@ -171,6 +171,7 @@ def _remote(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
 def _accounts(f: ReportFacts, ink: Ink, w: dict[str, str]) -> list[Flowable]:
     flow: list[Flowable] = [ink.say(w["accounts"], "heading")]
     flow += [ink.rich([("b", w["no_findings"])])] if f.no_findings else []
+    flow += [ink.rich([("b", remark)]) for remark in f.remarks]
     for card in f.accounts:
         head, more = _card(card, f.full, ink, w)
         flow += [*_together(head, f.full), *more, Spacer(0, 4)]

@@ -75,6 +75,7 @@ class ReportFacts:
     next_images: list[Row]
     next_axes: list[Row]
     no_findings: bool
+    remarks: tuple[str, ...]
     sources: list[Source]
     notes: list[tuple[int, Note, bool]]
     standing: list[Row]
@@ -139,6 +140,7 @@ def facts_of(
         next_axes=[{**row, "question": word(f"accounts.axis_{row['axis']}")} for row in rows_of(explanation.next_axes)]
         if full else [],
         no_findings=not explanation.reckoning.findings,
+        remarks=explanation.remarks,
         sources=_sources(graph, accounts),
         notes=[(depth, note, settled.get(origins.get(note.id, note.id), False))
                for depth, note in thread(notes, origins)],

@@ -60,6 +60,7 @@ def explanation_text(case: Case, explanation: Explanation) -> str:
     lines += ["", "Accounts", "--------"]
     if not explanation.reckoning.findings:
         lines.append(word("report.no_findings"))
+    lines += explanation.remarks
     shown = explanation.accounts[:SHOWN_ACCOUNTS]
     for rank, account in enumerate(shown, start=1):
         lines += _account_lines(rank, account)

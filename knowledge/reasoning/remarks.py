@@ -19,7 +19,7 @@ __all__ = ["LEAST_BITS", "ONE_SIDED", "few_bits", "lesion_side", "own_side", "te
 ONE_SIDED = 0.95
 """Share of the damage of paired elements that one hemisphere must hold for the lesion to count as one-sided."""
 
-LEAST_BITS = 0.1
+LEAST_BITS = 0.04
 """Expected information below which no bedside test is said to tell the accounts well apart."""
 
 
