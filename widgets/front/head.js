@@ -32,6 +32,8 @@ function render({ model, el }) {
   function draw() {
     const told = model.get("told");
     if (title.getRootNode().activeElement !== title) title.value = told.title || "";
+    mark(title, "size", Math.min(90, Math.max(24, (told.title || "").length)));
+    mark(title, "title", told.title ? `${told.title}\n${words.case_title}` : words.case_title);
     title.disabled = !told.open;
     invented.hidden = !told.invented;
     for (const [i, name] of Object.keys(model.get("options")).entries()) {
