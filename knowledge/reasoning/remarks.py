@@ -63,7 +63,7 @@ def few_bits(next_tests: pd.DataFrame) -> tuple[str, ...]:
     best = float(next_tests["bits"].max()) if len(next_tests) else 0.0
     if best >= LEAST_BITS:
         return ()
-    return ("No bedside test here would tell the accounts well apart; look at the scans below.",)
+    return ("No bedside test here would tell the accounts well apart; see which scans would.",)
 
 
 def tell_apart(graph: Graph, accounts: Sequence[Account]) -> tuple[Account, ...]:
