@@ -9,7 +9,7 @@ from toy_graph import toy_graph
 from toy_reckoning import absent, found, toy_explanation
 
 from byway.knowledge.reasoning.accounts import title_elements
-from byway.knowledge.reasoning.remarks import few_bits, lesion_side
+from byway.knowledge.reasoning.remarks import LEAST_BITS, few_bits, lesion_side
 
 CAPSULE = {"motor.capsule@left": 0.95}
 ALARM = "the same side as the lesion (left): check the side of the finding and the left-right orientation of the mask."
@@ -35,9 +35,9 @@ def test_no_alarm_on_the_usual_side_or_with_damage_on_both() -> None:
 
 
 def test_a_line_where_no_test_tells_much() -> None:
-    """Below a tenth of a bit the remark stands; from there on it does not."""
-    assert "No bedside test" in few_bits(pd.DataFrame({"bits": [0.03, 0.01]}))[0]
-    assert few_bits(pd.DataFrame({"bits": [0.1, 0.01]})) == ()
+    """Below LEAST_BITS the remark stands; from there on it does not."""
+    assert "No bedside test" in few_bits(pd.DataFrame({"bits": [0.9 * LEAST_BITS, 0.01]}))[0]
+    assert few_bits(pd.DataFrame({"bits": [LEAST_BITS, 0.01]})) == ()
     assert few_bits(pd.DataFrame({"bits": []})) != ()
 
 
