@@ -5,7 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Any
 
-from small_graph import SMALL
+from small_graph import CLAIM, SMALL
 
 from byway.knowledge.cases.case import open_case
 from byway.knowledge.graph.files import read_curated
@@ -16,17 +16,6 @@ from byway.widgets.state import BenchState
 __all__ = ["BASE", "CLAIM", "QuietScience", "editing_panel", "new_case"]
 
 BASE = read_curated(SMALL)
-CLAIM = {
-    "says": "The bow serves two hands.",
-    "subject": "bow.long",
-    "relation": "serves",
-    "object": "two_hands",
-    "grade": "weak",
-    "kind": "lesion_study",
-    "population": "patients",
-    "stance": "supports",
-    "sources": ["first_2001"],
-}
 
 
 class QuietScience:

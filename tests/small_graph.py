@@ -11,9 +11,20 @@ from byway.knowledge.faults import Fault, GraphError
 from byway.knowledge.graph.checks import check_graph
 from byway.knowledge.graph.files import read_curated
 
-__all__ = ["BREAKING", "SMALL", "faults_of", "spoil"]
+__all__ = ["BREAKING", "CLAIM", "SMALL", "faults_of", "spoil"]
 
 SMALL = Path(__file__).parent / "graph" / "fixtures" / "small"
+CLAIM = {
+    "says": "The bow serves two hands.",
+    "subject": "bow.long",
+    "relation": "serves",
+    "object": "two_hands",
+    "grade": "weak",
+    "kind": "lesion_study",
+    "population": "patients",
+    "stance": "supports",
+    "sources": ["first_2001"],
+}
 BREAKING = Path(__file__).parent / "graph" / "fixtures" / "breaking"
 
 

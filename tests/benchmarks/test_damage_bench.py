@@ -5,13 +5,11 @@ Run alone for figures worth quoting: ``python -m pytest tests/benchmarks/test_da
 
 from __future__ import annotations
 
-import time
-from collections.abc import Callable
-
 import nibabel as nib
 import numpy as np
 import pytest
 from nilearn.maskers import NiftiLabelsMasker, NiftiMapsMasker
+from ratios import note, seconds
 from toy_space import label_layers, toy_geometry
 
 from byway.knowledge.damage.anatomies import Anatomies
@@ -31,23 +29,6 @@ THIRTY_ML = 19.3  # radius in mm: 4/3 pi r^3 is 30.1 ml
 def lesion() -> Lesion:
     """A fresh 30 ml lesion, so that nothing that is kept from an earlier call helps."""
     return Lesion.from_mask(sphere_mask((-40, -10, 20), THIRTY_ML))
-
-
-def seconds(work: Callable[[], object], rounds: int = 5) -> float:
-    """Least time of some rounds."""
-    times = []
-    for _ in range(rounds):
-        start = time.perf_counter()
-        work()
-        times.append(time.perf_counter() - start)
-    return min(times)
-
-
-def note(benchmark, capsys, words: str, **ratios: float) -> None:
-    """Print ratios, and keep them with the benchmark."""
-    benchmark.extra_info.update(ratios)
-    with capsys.disabled():
-        print(f"\n{words}: " + ", ".join(f"{name} {value:.3g}" for name, value in ratios.items()))
 
 
 @pytest.fixture(scope="module")

@@ -8,6 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 from own_case import write_own
+from ratios import note
 from tract_files import invented_bundle, write_trk
 
 from byway.knowledge.cases.own import folder_layer, laid_on
@@ -17,13 +18,6 @@ from byway.knowledge.space.own import compare_anatomies
 from byway.knowledge.space.tractograms import read_tractogram
 
 pytestmark = pytest.mark.benchmark(group="space")
-
-
-def note(benchmark, capsys, words: str, **figures: float) -> None:
-    """Print figures, and keep them with the benchmark."""
-    benchmark.extra_info.update(figures)
-    with capsys.disabled():
-        print(f"\n{words}: " + ", ".join(f"{name} {value:.3g}" for name, value in figures.items()))
 
 
 def test_own_bundles(benchmark, capsys, template: Template, tmp_path: Path) -> None:

@@ -6,13 +6,12 @@ Run alone for figures worth quoting: ``python -m pytest tests/benchmarks/test_sp
 from __future__ import annotations
 
 import sys
-import time
-from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 import pytest
+from ratios import note, seconds
 
 from byway.knowledge.damage.index import DamageIndex
 from byway.knowledge.damage.point import point_damage
@@ -22,23 +21,6 @@ from byway.knowledge.lesion.lesion import Lesion
 from byway.knowledge.lesion.shapes import sphere_mask
 from byway.knowledge.space.atlas import Template, load_template
 from byway.knowledge.space.geometry import Geometry
-
-
-def seconds(work: Callable[[], object], rounds: int = 3) -> float:
-    """Least time of some rounds."""
-    times = []
-    for _ in range(rounds):
-        start = time.perf_counter()
-        work()
-        times.append(time.perf_counter() - start)
-    return min(times)
-
-
-def note(benchmark, capsys, words: str, **figures: float) -> None:
-    """Print figures, and keep them with the benchmark."""
-    benchmark.extra_info.update(figures)
-    with capsys.disabled():
-        print(f"\n{words}: " + ", ".join(f"{name} {value:.3g}" for name, value in figures.items()))
 
 
 def with_segments(geometry: Geometry, count: int) -> Geometry:

@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
-from small_graph import SMALL
+from small_graph import CLAIM, SMALL
 from strategies import Wish, edit_wishes
 
 from byway.knowledge.faults import GraphError
@@ -21,17 +21,6 @@ from byway.knowledge.graph.overlays import Overlay, overlay_text, parse_overlay
 
 BASE = read_curated(SMALL)
 EMPTY = Overlay("Ward", "A. Reader", "2026-12-01")
-CLAIM = {
-    "says": "The bow serves two hands.",
-    "subject": "bow.long",
-    "relation": "serves",
-    "object": "two_hands",
-    "grade": "weak",
-    "kind": "lesion_study",
-    "population": "patients",
-    "stance": "supports",
-    "sources": ["first_2001"],
-}
 
 
 @settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.too_slow, HealthCheck.data_too_large])
