@@ -235,8 +235,9 @@ def anatomy_compare(path: Path, *, csv: Path | None) -> int:
 
 def new_from_mask(mask: Path, folder: Path, *, label: int | None) -> int:
     """Make a case folder from a mask."""
-    case = new_case(folder, mask, label=label)
-    for note in read_lesion(mask, label=label).notes:
+    lesion = read_lesion(mask, label=label)
+    case = new_case(folder, lesion)
+    for note in lesion.notes:
         _say(f"{mask.name}: {note}")
     for trace in image_traces(mask):
         _say(f"left behind, since it could identify a person: {trace.kind} ({trace.place} of {trace.file})")

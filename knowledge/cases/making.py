@@ -13,20 +13,23 @@ from byway.knowledge.cases.files import write_case
 from byway.knowledge.cases.model import CaseFile
 from byway.knowledge.cases.privacy import Trace, stripped_image
 from byway.knowledge.faults import CaseError, Fault
-from byway.knowledge.lesion.images import read_lesion, read_volume, write_mask
+from byway.knowledge.lesion.images import mask_name, read_lesion, read_volume, write_mask
+from byway.knowledge.lesion.lesion import Lesion
 
-__all__ = ["add_scan", "new_case"]
+__all__ = ["add_scan", "bench_notebook", "new_case"]
 
 
-def new_case(folder: str | Path, mask: str | Path | None = None, *, label: int | None = None, **fields: object) -> Case:
+def new_case(
+    folder: str | Path, mask: str | Path | Lesion | None = None, *, label: int | None = None, **fields: object
+) -> Case:
     """Make a case folder.
 
     Parameters
     ----------
     folder : str or Path
         A folder that does not exist yet, or is empty.
-    mask : str or Path, optional
-        A NIfTI mask in template space; it is copied without free text in its header.
+    mask : str, Path or Lesion, optional
+        A NIfTI mask in template space, or one read already; it is copied without free text in its header.
     label : int, optional
         The label to take, where the file holds several.
     **fields
@@ -44,9 +47,9 @@ def new_case(folder: str | Path, mask: str | Path | None = None, *, label: int |
         raise CaseError(Fault("folder-exists", str(place), "a folder that holds something", "a new or empty folder",
                               "choose another name; nothing was written"))  # fmt: skip
     data: dict[str, object] = {"stage": "acute", **fields}
-    lesion = read_lesion(Path(mask), label=label) if mask is not None else None
+    lesion = mask if isinstance(mask, Lesion) or mask is None else read_lesion(Path(mask), label=label)
     if lesion is not None:
-        name = "space-MNI152NLin2009aSym_label-lesion_desc-core_mask.nii.gz"
+        name = mask_name("lesion", desc="core")
         data["lesion"] = {"compartments": [{"name": "core", "kind": "core", "effect": 1.0, "file": name}]}
         spec = CaseFile.model_validate(data)
         write_mask(place / name, lesion.mask)
