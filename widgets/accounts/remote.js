@@ -1,5 +1,5 @@
 // Regions that lost their input: the share lost, why the region is named, and the network's standard measures.
-import { fixed, frame, glyph, h, keep, mark, number, percent, say, setNumber, watch } from "../front/kit.js";
+import { fixed, frame, glyph, h, keep, mark, number, percent, say, selector, setNumber, watch } from "../front/kit.js";
 
 const MEASURES = [["strength_before", 1], ["strength_after", 1], ["path_before", 3], ["path_after", 3]];
 
@@ -29,10 +29,7 @@ function makeRow(row, words, select) {
 
 function render({ model, el }) {
   const words = model.get("words");
-  const select = (element) => {
-    model.set("selected", element);
-    model.save_changes();
-  };
+  const select = selector(model);
   const { panel, body, foot } = frame(el, words, "remote");
   const column = (text, hint) => h("th", { scope: "col", title: hint }, text);
   const rows = h("tbody", {});

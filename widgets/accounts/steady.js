@@ -1,5 +1,5 @@
 // How steady the ranking is under small changes, and what reserve is left.
-import { fill, frame, h, mark, number, percent, say, watch } from "../front/kit.js";
+import { fill, frame, h, mark, number, percent, say, selector, watch } from "../front/kit.js";
 import { chip, claimList, redo } from "./parts.js";
 
 function table(told, words) {
@@ -14,7 +14,7 @@ function table(told, words) {
 
 function render({ model, el }) {
   const words = model.get("words");
-  const select = (element) => { model.set("selected", element); model.save_changes(); };
+  const select = selector(model);
   const examine = h("button", { type: "button", class: "bw-button", onclick: () => { say(status, words.thinking); model.send({ kind: "examine" }); } }, words.examine);
   const status = h("span", { class: "bw-soft", role: "status" });
   const { panel, body } = frame(el, words, "steady", status, examine);

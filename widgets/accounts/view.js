@@ -1,5 +1,5 @@
 // The accounts panel: rivals side by side, each as a card, then what would tell them apart.
-import { fill, frame, h, keep, mark, number, percent, say, segmented, setNumber, watch } from "../front/kit.js";
+import { fill, frame, h, keep, mark, number, percent, say, segmented, selector, setNumber, watch } from "../front/kit.js";
 import { makeCard } from "./card.js";
 import { makeComparison } from "./compare.js";
 import { nextAxes, nextImages, nextTests } from "./next.js";
@@ -21,10 +21,7 @@ function share(account, words) {
 
 function render({ model, el }) {
   const words = model.get("words");
-  const select = (element) => {
-    model.set("selected", element);
-    model.save_changes();
-  };
+  const select = selector(model);
   const busy = h("span", { class: "bw-busy bw-soft", role: "status" });
   let view = "cards";
   const views = segmented(words.views, [["cards", words.view_cards], ["next", words.view_next], ["compare", words.view_compare]], view, (which) => {

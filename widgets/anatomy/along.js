@@ -1,5 +1,5 @@
 // Along the course: the chart of one segment, a sentence that says the same, and the numbers as a table.
-import { fill, fixed, frame, glyph, h, mark, number, percent, say, watch } from "../front/kit.js";
+import { fill, fixed, frame, glyph, h, mark, number, percent, say, selector, watch } from "../front/kit.js";
 import { axes, chart, sample } from "./chart.js";
 
 /** A sentence of the table of words with numbers that name themselves. */
@@ -31,10 +31,7 @@ function table(course, words) {
 
 function render({ model, el }) {
   const words = model.get("words");
-  const choose = h("select", { "aria-label": words.choose, onchange: () => {
-    model.set("selected", choose.value);
-    model.save_changes();
-  } });
+  const choose = h("select", { "aria-label": words.choose, onchange: () => selector(model)(choose.value) });
   const { panel, body, foot } = frame(el, words, "along", choose);
   const name = h("h3", { class: "bw-along-name" });
   const told = h("p", { class: "bw-along-told", "aria-live": "polite" });

@@ -1,5 +1,5 @@
 // Template | own | difference: one row an element that rests on own anatomy.
-import { fill, fixed, frame, glyph, h, keep, mark, number, percent, say, setNumber, watch } from "../front/kit.js";
+import { fill, fixed, frame, glyph, h, keep, mark, number, percent, say, selector, setNumber, watch } from "../front/kit.js";
 
 function bar(kind) {
   const node = h("span", { class: `bw-both-bar bw-both-${kind}`, "aria-hidden": "true" }, h("i", {}));
@@ -50,10 +50,7 @@ function makeRow(row, words, select) {
 
 function render({ model, el }) {
   const words = model.get("words");
-  const select = (element) => {
-    model.set("selected", element);
-    model.save_changes();
-  };
+  const select = selector(model);
   const { panel, body, foot } = frame(el, words, "anatomies");
   const column = (text, hint) => h("th", { scope: "col", title: hint }, text);
   const rows = h("tbody", {});

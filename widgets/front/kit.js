@@ -109,6 +109,12 @@ export function odds(value) {
   return value >= 1 ? `${plain(value)} : 1` : `1 : ${plain(1 / Math.max(value, 1e-12))}`;
 }
 
+/** What tells all panels that an element is pointed out. */
+export const selector = (model) => (element) => {
+  model.set("selected", element);
+  model.save_changes();
+};
+
 /** Calls `draw` now and when any named trait changes; returns what stops it. */
 export function watch(model, names, draw) {
   const events = names.map((name) => `change:${name}`);

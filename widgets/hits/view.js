@@ -1,5 +1,5 @@
 // What is hit: a sorted table whose rows are changed in place, so that a stroke redraws only what it changed.
-import { fill, fixed, frame, glyph, h, keep, mark, number, percent, say, segmented, setNumber, watch } from "../front/kit.js";
+import { fill, fixed, frame, glyph, h, keep, mark, number, percent, say, segmented, selector, setNumber, watch } from "../front/kit.js";
 import { asText, readRows, split } from "./rows.js";
 
 function bar(row, words) {
@@ -60,10 +60,7 @@ function makeRow(row, words, select) {
 function render({ model, el }) {
   const words = model.get("words");
   const view = { kind: "all", text: "" };
-  const select = (element) => {
-    model.set("selected", element);
-    model.save_changes();
-  };
+  const select = selector(model);
   const kinds = segmented(words.filter_label,
     [["all", words.all], ["segment", words.segments], ["region", words.regions]], "all", (kind) => {
       view.kind = kind;

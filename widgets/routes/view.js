@@ -1,5 +1,5 @@
 // The routes of a function: what each element usually carries, what is cut, what still flows, and where it is held back.
-import { fill, fixed, frame, freshId, glyph, h, mark, number, percent, s, say, setNumber, watch } from "../front/kit.js";
+import { fill, fixed, frame, freshId, glyph, h, mark, number, percent, s, say, selector, setNumber, watch } from "../front/kit.js";
 import { arrange } from "./layout.js";
 
 function hatch(id) {
@@ -106,7 +106,7 @@ function render({ model, el }) {
     if (told !== now) {
       told = now;
       const held = stage.querySelector(":focus")?.dataset.element;
-      stage.replaceChildren(drawNet(net, words, room, model.get("selected"), (id) => { model.set("selected", id); model.save_changes(); }, describe));
+      stage.replaceChildren(drawNet(net, words, room, model.get("selected"), selector(model), describe));
       if (held) stage.querySelector(`[data-element="${CSS.escape(held)}"]`)?.focus();
       table.replaceChildren(drawTable(net, words));
       const at = net.nodes.findIndex((node) => node.id === model.get("selected"));
